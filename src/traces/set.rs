@@ -1,0 +1,243 @@
+//! The trace set: names, labels, grid and samples.
+
+use std::sync::Arc;
+
+use crate::support::{SignalId, TraceId};
+use crate::template::{Duration, Signal, TimeUnit};
+
+/// The uniform time grid that all traces share.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Grid {
+    /// The distance of two samples, in `unit`.
+    pub step: f64,
+    /// The unit of the data's own time: what a bare duration means.
+    /// [`TimeUnit::Step`] where the data has no time.
+    pub unit: TimeUnit,
+}
+
+impl Grid {
+    /// A grid of plain samples, for data without time.
+    pub fn samples() -> Self {
+        Grid {
+            step: 1.0,
+            unit: TimeUnit::Step,
+        }
+    }
+
+    /// How many steps a duration is, not rounded; `None` when a duration in
+    /// seconds meets data whose time has no unit.
+    pub fn steps(&self, duration: Duration) -> Option<f64> {
+        let value = duration.value.value();
+        match duration.unit {
+            TimeUnit::Step => Some(value),
+            TimeUnit::Data => Some(value / self.step),
+            unit => Some(value * unit.seconds()? / (self.step * self.unit.seconds()?)),
+        }
+    }
+
+    /// The duration of so many steps, written in the data's own unit.
+    pub fn duration(&self, steps: f64) -> f64 {
+        steps * self.step
+    }
+}
+
+/// A signal's samples on all traces.
+#[derive(Debug, Clone)]
+pub struct Channel {
+    /// What it is: a recorded name or a derivation.
+    pub signal: Signal,
+    /// Its unit, where one is known.
+    pub unit: Option<Arc<str>>,
+    /// All samples, trace after trace. NaN where not known; flags 0 and 1.
+    pub samples: Vec<f64>,
+}
+
+/// The label of each trace, as an index into the sorted list of names.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Labels {
+    /// The different labels, sorted.
+    pub names: Vec<String>,
+    /// For each trace the position of its label in `names`.
+    pub of_trace: Vec<usize>,
+}
+
+/// Traces on one grid.
+#[derive(Debug, Clone)]
+pub struct TraceSet {
+    names: Vec<String>,
+    /// Where each trace's samples start, and at the end their number.
+    starts: Vec<usize>,
+    labels: Option<Labels>,
+    grid: Grid,
+    channels: Vec<Channel>,
+}
+
+/// One trace's samples, by signal.
+#[derive(Debug, Clone, Copy)]
+pub struct Record<'a> {
+    set: &'a TraceSet,
+    trace: TraceId,
+}
+
+impl<'a> Record<'a> {
+    /// The number of samples.
+    pub fn length(&self) -> usize {
+        self.set.length(self.trace)
+    }
+
+    /// The samples of a signal.
+    pub fn samples(&self, signal: SignalId) -> &'a [f64] {
+        self.set.samples(signal, self.trace)
+    }
+}
+
+impl TraceSet {
+    /// A set of traces from its parts. `lengths[i]` is the number of samples
+    /// of trace i; every channel has their sum.
+    ///
+    /// # Panics
+    /// When the parts do not fit one another.
+    pub fn new(
+        names: Vec<String>,
+        lengths: &[usize],
+        labels: Option<Labels>,
+        grid: Grid,
+        channels: Vec<Channel>,
+    ) -> Self {
+        assert_eq!(names.len(), lengths.len());
+        let mut starts = vec![0];
+        for length in lengths {
+            starts.push(starts[starts.len() - 1] + length);
+        }
+        let total = starts[starts.len() - 1];
+        assert!(
+            channels
+                .iter()
+                .all(|channel| channel.samples.len() == total)
+        );
+        if let Some(labels) = &labels {
+            assert_eq!(labels.of_trace.len(), names.len());
+        }
+        TraceSet {
+            names,
+            starts,
+            labels,
+            grid,
+            channels,
+        }
+    }
+
+    /// The number of traces.
+    pub fn count(&self) -> usize {
+        self.names.len()
+    }
+
+    /// All traces, in order.
+    pub fn traces(&self) -> impl ExactSizeIterator<Item = TraceId> + use<> {
+        (0..self.names.len()).map(TraceId::at)
+    }
+
+    /// The names of the traces.
+    pub fn names(&self) -> &[String] {
+        &self.names
+    }
+
+    /// The labels, where there are any.
+    pub fn labels(&self) -> Option<&Labels> {
+        self.labels.as_ref()
+    }
+
+    /// Sets or removes the labels.
+    ///
+    /// # Panics
+    /// When there are not as many labels as traces.
+    pub fn set_labels(&mut self, labels: Option<Labels>) {
+        if let Some(labels) = &labels {
+            assert_eq!(labels.of_trace.len(), self.names.len());
+        }
+        self.labels = labels;
+    }
+
+    /// The time grid.
+    pub fn grid(&self) -> &Grid {
+        &self.grid
+    }
+
+    /// The number of samples of a trace.
+    pub fn length(&self, trace: TraceId) -> usize {
+        self.starts[trace.index() + 1] - self.starts[trace.index()]
+    }
+
+    /// The number of samples of the longest trace.
+    pub fn longest(&self) -> usize {
+        self.traces().map(|t| self.length(t)).max().unwrap_or(0)
+    }
+
+    /// All signals computed so far: recorded ones first, in the order of the
+    /// data, then derived ones.
+    pub fn channels(&self) -> &[Channel] {
+        &self.channels
+    }
+
+    /// One signal.
+    pub fn channel(&self, id: SignalId) -> &Channel {
+        &self.channels[id.index()]
+    }
+
+    /// The id of a signal that is recorded or already derived.
+    pub fn signal_id(&self, signal: &Signal) -> Option<SignalId> {
+        self.channels
+            .iter()
+            .position(|channel| channel.signal == *signal)
+            .map(SignalId::at)
+    }
+
+    /// Adds a derived signal, and gives its id.
+    ///
+    /// # Panics
+    /// When the number of samples does not fit.
+    pub fn add_channel(&mut self, channel: Channel) -> SignalId {
+        assert_eq!(channel.samples.len(), self.starts[self.names.len()]);
+        self.channels.push(channel);
+        SignalId::at(self.channels.len() - 1)
+    }
+
+    /// The samples of a signal on one trace.
+    pub fn samples(&self, signal: SignalId, trace: TraceId) -> &[f64] {
+        let range = self.starts[trace.index()]..self.starts[trace.index() + 1];
+        &self.channels[signal.index()].samples[range]
+    }
+
+    /// One trace's samples by signal.
+    pub fn record(&self, trace: TraceId) -> Record<'_> {
+        Record { set: self, trace }
+    }
+
+    /// The set of some of the traces, in the order given, with all signals and
+    /// labels. The list of label names stays whole.
+    pub fn select(&self, traces: &[TraceId]) -> TraceSet {
+        let lengths: Vec<usize> = traces.iter().map(|t| self.length(*t)).collect();
+        let channels = (0..self.channels.len())
+            .map(|position| {
+                let mut samples = Vec::with_capacity(lengths.iter().sum());
+                for trace in traces {
+                    samples.extend_from_slice(self.samples(SignalId::at(position), *trace));
+                }
+                Channel {
+                    samples,
+                    signal: self.channels[position].signal.clone(),
+                    unit: self.channels[position].unit.clone(),
+                }
+            })
+            .collect();
+        let labels = self.labels.as_ref().map(|labels| Labels {
+            names: labels.names.clone(),
+            of_trace: traces.iter().map(|t| labels.of_trace[t.index()]).collect(),
+        });
+        let names = traces
+            .iter()
+            .map(|t| self.names[t.index()].clone())
+            .collect();
+        TraceSet::new(names, &lengths, labels, self.grid.clone(), channels)
+    }
+}

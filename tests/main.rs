@@ -1,0 +1,20 @@
+//! All integration tests, in one binary.
+#![allow(
+    clippy::unwrap_used,
+    clippy::float_cmp,
+    reason = "a test that fails says so by panicking, and compares exact values"
+)]
+
+mod chance;
+mod commands;
+mod descriptions;
+mod equivalence;
+mod grammars;
+mod grouping;
+mod kernels;
+mod language;
+mod measures;
+mod scoring;
+mod support;
+mod tidy;
+mod trace_files;
