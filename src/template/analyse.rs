@@ -4,12 +4,14 @@
 use std::ops::Range;
 
 use super::ast::{Ast, AstKind};
+use super::atom::{Atom, Comparison, Threshold};
 use super::duration::{Duration, TimeUnit};
 use super::error::TextError;
-use super::formula::{Atom, Bound, Comparison, Formula, Threshold, Window, WindowError};
+use super::formula::Formula;
 use super::function::{FUNCTIONS, Function, Kind};
 use super::parse::parse_ast;
 use super::signal::Signal;
+use super::window::{Bound, Window, WindowError};
 use crate::support::Finite;
 
 /// Reads a template (or, without slots, a specification) from its text form.

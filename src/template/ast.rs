@@ -6,7 +6,7 @@
 
 use std::ops::Range;
 
-use super::formula::Comparison;
+use super::atom::Comparison;
 
 /// A piece of a text and what it says.
 #[derive(Debug, Clone, PartialEq)]

@@ -10,232 +10,12 @@
 use std::hash::{Hash, Hasher};
 use std::sync::Arc;
 
-use super::duration::Duration;
+use super::atom::{Atom, Comparison, Threshold};
 use super::function::Kind;
 use super::signal::Signal;
-use crate::support::{Finite, SlotId};
-
-/// How an atom compares a numeric signal with its threshold.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Comparison {
-    /// `<=`
-    AtMost,
-    /// `>=`
-    AtLeast,
-    /// `<`
-    Below,
-    /// `>`
-    Above,
-}
-
-impl Comparison {
-    /// The sign in text.
-    pub fn sign(self) -> &'static str {
-        match self {
-            Comparison::AtMost => "<=",
-            Comparison::AtLeast => ">=",
-            Comparison::Below => "<",
-            Comparison::Above => ">",
-        }
-    }
-
-    /// The comparison that holds exactly when this one does not.
-    pub fn negated(self) -> Self {
-        match self {
-            Comparison::AtMost => Comparison::Above,
-            Comparison::AtLeast => Comparison::Below,
-            Comparison::Below => Comparison::AtLeast,
-            Comparison::Above => Comparison::AtMost,
-        }
-    }
-
-    /// Whether a number stands in this relation to a threshold.
-    pub fn holds(self, value: f64, threshold: f64) -> bool {
-        match self {
-            Comparison::AtMost => value <= threshold,
-            Comparison::AtLeast => value >= threshold,
-            Comparison::Below => value < threshold,
-            Comparison::Above => value > threshold,
-        }
-    }
-
-    /// What a larger threshold does.
-    pub fn direction(self) -> Direction {
-        match self {
-            Comparison::AtMost | Comparison::Below => Direction::LargerIsEasier,
-            Comparison::AtLeast | Comparison::Above => Direction::LargerIsHarder,
-        }
-    }
-}
-
-/// What a larger slot value does to the verdict.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Direction {
-    /// A trace that satisfies the template keeps satisfying it.
-    LargerIsEasier,
-    /// A trace that violates the template keeps violating it.
-    LargerIsHarder,
-}
-
-impl Direction {
-    /// The other direction, which is what negation gives.
-    pub fn reversed(self) -> Self {
-        match self {
-            Direction::LargerIsEasier => Direction::LargerIsHarder,
-            Direction::LargerIsHarder => Direction::LargerIsEasier,
-        }
-    }
-}
-
-/// The right side of a comparison.
-#[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Threshold {
-    /// A number, in the channel's unit or carrying that unit.
-    Number(Finite, Option<Arc<str>>),
-    /// A slot.
-    Slot,
-}
-
-/// The smallest formulas.
-#[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Atom {
-    /// A numeric signal against a threshold.
-    Compare {
-        /// The numeric signal.
-        signal: Signal,
-        /// The relation.
-        comparison: Comparison,
-        /// The number or slot.
-        threshold: Threshold,
-    },
-    /// A flag, or its negation.
-    Flag {
-        /// The flag.
-        signal: Signal,
-        /// Whether the atom is `not` the flag.
-        negated: bool,
-    },
-}
-
-/// One end of a window of time.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Bound {
-    /// A duration from now.
-    After(Duration),
-    /// A slot.
-    Slot,
-    /// `end`: no upper bound.
-    End,
-}
-
-/// The window of a temporal operator. Never empty by construction: a slot as
-/// lower bound goes with `end` only, and a constant lower bound is not above a
-/// constant upper one (checked where both are in one unit; across units when
-/// the template meets the data).
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub struct Window {
-    lower: Bound,
-    upper: Bound,
-}
-
-/// Why two bounds make no window.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, thiserror::Error)]
-pub enum WindowError {
-    /// The lower bound is `end`.
-    #[error("a window cannot start at `end`")]
-    StartsAtEnd,
-    /// A slot as lower bound with an upper bound other than `end`.
-    #[error("a slot as lower bound goes with `end` only, so that no window is empty")]
-    SlotBelowBound,
-    /// The lower bound lies above the upper one.
-    #[error("the window is empty: its lower bound lies above its upper bound")]
-    Empty,
-    /// A bound is negative.
-    #[error("a bound cannot be negative: a template looks forward in time")]
-    Negative,
-}
-
-impl Window {
-    /// A window from two bounds.
-    ///
-    /// # Errors
-    /// When the bounds make no window, or could make an empty one.
-    pub fn new(lower: Bound, upper: Bound) -> Result<Self, WindowError> {
-        let zero = Finite::from(0);
-        for bound in [lower, upper] {
-            if matches!(bound, Bound::After(duration) if duration.value < zero) {
-                return Err(WindowError::Negative);
-            }
-        }
-        match (lower, upper) {
-            (Bound::End, _) => return Err(WindowError::StartsAtEnd),
-            (Bound::Slot, Bound::After(_) | Bound::Slot) => {
-                return Err(WindowError::SlotBelowBound);
-            }
-            (Bound::After(low), Bound::After(high)) if is_above(low, high) => {
-                return Err(WindowError::Empty);
-            }
-            _ => {}
-        }
-        Ok(Window { lower, upper })
-    }
-
-    /// `[0, end]`.
-    pub fn whole() -> Self {
-        Window {
-            lower: Bound::After(Duration::zero()),
-            upper: Bound::End,
-        }
-    }
-
-    /// The lower bound.
-    pub fn lower(&self) -> Bound {
-        self.lower
-    }
-
-    /// The upper bound.
-    pub fn upper(&self) -> Bound {
-        self.upper
-    }
-}
-
-/// Whether one constant bound is certainly above another.
-fn is_above(low: Duration, high: Duration) -> bool {
-    if low.unit == high.unit {
-        return low.value > high.value;
-    }
-    match (low.unit.seconds(), high.unit.seconds()) {
-        (Some(a), Some(b)) => low.value.value() * a > high.value.value() * b * (1.0 + 1e-9),
-        _ => high.is_zero() && !low.is_zero(),
-    }
-}
-
-/// What a slot stands for.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub enum SlotKind {
-    /// A threshold of this numeric signal.
-    Threshold(Signal),
-    /// A duration.
-    Time,
-}
-
-/// A slot of a template, as its constructors found it.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub struct Slot {
-    /// Threshold or time.
-    pub kind: SlotKind,
-    /// What a larger value does to the verdict.
-    pub direction: Direction,
-}
-
-/// A value for a slot.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub enum SlotValue {
-    /// For a threshold slot.
-    Threshold(Finite),
-    /// For a time slot.
-    Time(Duration),
-}
+use super::slot::{Direction, Slot, SlotKind, SlotValue};
+use super::window::{Bound, Window};
+use crate::support::SlotId;
 
 /// The shapes a formula can have.
 #[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -381,14 +161,14 @@ impl Formula {
     /// The operand at every instant of the window.
     pub fn throughout(window: Window, operand: Formula) -> Self {
         let slots = window_slots(window, Direction::LargerIsHarder);
-        let facts = Facts::above(1, 1, slots, window.upper == Bound::End, &[&operand]);
+        let facts = Facts::above(1, 1, slots, window.upper() == Bound::End, &[&operand]);
         Formula::build(Node::Throughout(window, operand), facts)
     }
 
     /// The operand at some instant of the window.
     pub fn sometime(window: Window, operand: Formula) -> Self {
         let slots = window_slots(window, Direction::LargerIsEasier);
-        let facts = Facts::above(1, 1, slots, window.upper == Bound::End, &[&operand]);
+        let facts = Facts::above(1, 1, slots, window.upper() == Bound::End, &[&operand]);
         Formula::build(Node::Sometime(window, operand), facts)
     }
 
@@ -401,7 +181,7 @@ impl Formula {
             1,
             1,
             Vec::new(),
-            window.upper == Bound::End,
+            window.upper() == Bound::End,
             &[&left, &right],
         );
         // In text the window stands between the two sides, and slots are
@@ -569,7 +349,7 @@ fn negated_all(operands: &[Formula]) -> Result<Vec<Formula>, UntilNotNegatable> 
 /// lower bound does the opposite.
 fn window_slots(window: Window, upper: Direction) -> Vec<Slot> {
     let mut slots = Vec::new();
-    for (bound, direction) in [(window.lower, upper.reversed()), (window.upper, upper)] {
+    for (bound, direction) in [(window.lower(), upper.reversed()), (window.upper(), upper)] {
         if bound == Bound::Slot {
             slots.push(Slot {
                 kind: SlotKind::Time,
@@ -611,59 +391,6 @@ impl Facts {
         }
         facts.depth += depth;
         facts
-    }
-}
-
-impl Atom {
-    /// The signal the atom reads.
-    pub fn signal(&self) -> &Signal {
-        match self {
-            Atom::Compare { signal, .. } | Atom::Flag { signal, .. } => signal,
-        }
-    }
-
-    /// The atom that holds exactly when this one does not.
-    pub fn negated(&self) -> Atom {
-        let mut negation = self.clone();
-        match &mut negation {
-            Atom::Compare { comparison, .. } => *comparison = comparison.negated(),
-            Atom::Flag { negated, .. } => *negated = !*negated,
-        }
-        negation
-    }
-
-    fn filled(&self, values: &mut std::slice::Iter<'_, Option<SlotValue>>) -> Atom {
-        let mut atom = self.clone();
-        if let Atom::Compare { threshold, .. } = &mut atom
-            && *threshold == Threshold::Slot
-        {
-            match values.next() {
-                Some(Some(SlotValue::Threshold(value))) => {
-                    *threshold = Threshold::Number(*value, None);
-                }
-                Some(None) => {}
-                other => panic!("a threshold slot is given {other:?}"),
-            }
-        }
-        atom
-    }
-}
-
-impl Window {
-    fn filled(self, values: &mut std::slice::Iter<'_, Option<SlotValue>>) -> Window {
-        let mut fill = |bound: Bound| match bound {
-            Bound::Slot => match values.next() {
-                Some(Some(SlotValue::Time(duration))) => Bound::After(*duration),
-                Some(None) => Bound::Slot,
-                other => panic!("a time slot is given {other:?}"),
-            },
-            _ => bound,
-        };
-        let lower = fill(self.lower);
-        Window {
-            lower,
-            upper: fill(self.upper),
-        }
     }
 }
 

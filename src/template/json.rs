@@ -11,10 +11,12 @@
 
 use serde::{Deserialize, Serialize};
 
+use super::atom::{Atom, Comparison, Threshold};
 use super::duration::{Duration, TimeUnit};
-use super::formula::{Atom, Bound, Comparison, Formula, Node, Threshold, Window};
+use super::formula::{Formula, Node};
 use super::function::{Function, Kind};
 use super::signal::Signal;
+use super::window::{Bound, Window};
 use crate::support::Finite;
 
 /// The schema this version writes and reads.

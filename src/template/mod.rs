@@ -19,6 +19,7 @@
 
 mod analyse;
 mod ast;
+mod atom;
 mod duration;
 mod error;
 mod formula;
@@ -28,19 +29,21 @@ mod parse;
 mod print;
 mod sentence;
 mod signal;
+mod slot;
 mod token;
+mod window;
 
 pub use analyse::{analyse, parse, parse_signal};
 pub use ast::{Ast, AstKind};
+pub use atom::{Atom, Comparison, Threshold};
 pub use duration::{Duration, TimeUnit};
 pub use error::TextError;
-pub use formula::{
-    Atom, Bound, Comparison, Direction, Formula, Node, Slot, SlotKind, SlotValue, Threshold,
-    UntilNotNegatable, Window, WindowError,
-};
+pub use formula::{Formula, Node, UntilNotNegatable};
 pub use function::{FUNCTIONS, Function, FunctionShape, Kind};
 pub use json::{JsonError, from_json, to_json};
 pub use parse::{Parser, parse_ast};
 pub use sentence::{Words, sentence};
 pub use signal::{Derivation, Signal};
+pub use slot::{Direction, Slot, SlotKind, SlotValue};
 pub use token::{RESERVED, Token, TokenKind, is_plain_name, tokenize};
+pub use window::{Bound, Window, WindowError};

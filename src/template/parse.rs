@@ -8,8 +8,8 @@
 use std::ops::Range;
 
 use super::ast::{Ast, AstKind};
+use super::atom::Comparison;
 use super::error::TextError;
-use super::formula::Comparison;
 use super::token::{RESERVED, Token, TokenKind, tokenize};
 
 /// Deepest nesting accepted. Far above any template a person would read.

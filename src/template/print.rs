@@ -2,8 +2,10 @@
 
 use std::fmt;
 
-use super::formula::{Atom, Bound, Formula, Node, Threshold, Window};
+use super::atom::{Atom, Threshold};
+use super::formula::{Formula, Node};
 use super::token::is_plain_name;
+use super::window::{Bound, Window};
 
 /// Writes a name, in double quotes where it needs them.
 pub(super) fn write_name(f: &mut fmt::Formatter<'_>, name: &str) -> fmt::Result {

@@ -4,10 +4,12 @@
 //! disagree. [`Words`] says how to write the parts that depend on the data:
 //! the unit of a signal, and the name of a slot.
 
-use super::formula::{Atom, Bound, Comparison, Formula, Node, Threshold, Window};
+use super::atom::{Atom, Comparison, Threshold};
+use super::formula::{Formula, Node};
 use super::function::Function;
 use super::print::implication;
 use super::signal::Signal;
+use super::window::{Bound, Window};
 
 /// What the sentence needs to know beyond the formula.
 pub trait Words {
