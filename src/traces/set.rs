@@ -61,6 +61,20 @@ pub struct Labels {
     pub of_trace: Vec<usize>,
 }
 
+impl Labels {
+    /// Labels from the name of each trace's label.
+    pub fn from_names(of_trace: Vec<String>) -> Self {
+        let mut names = of_trace.clone();
+        names.sort();
+        names.dedup();
+        let of_trace = of_trace
+            .iter()
+            .map(|label| names.partition_point(|name| name < label))
+            .collect();
+        Labels { names, of_trace }
+    }
+}
+
 /// Traces on one grid.
 #[derive(Debug, Clone)]
 pub struct TraceSet {
