@@ -7,6 +7,7 @@
 
 mod chance;
 mod commands;
+mod demo_data;
 mod descriptions;
 mod equivalence;
 mod grammars;

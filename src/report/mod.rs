@@ -1,1 +1,6 @@
-//! To be written.
+//! Results for people and for other programs. Everything here turns the plain
+//! data of `search::outcome` into text; nothing is computed again.
+
+mod terminal;
+
+pub use terminal::{explanation, ranking};

@@ -193,6 +193,16 @@ impl TraceSet {
         &self.channels
     }
 
+    /// The recorded signals, in the order of the data.
+    pub fn recorded(&self) -> &[Channel] {
+        let count = self
+            .channels
+            .iter()
+            .take_while(|channel| matches!(channel.signal, Signal::Recorded { .. }))
+            .count();
+        &self.channels[..count]
+    }
+
     /// One signal.
     pub fn channel(&self, id: SignalId) -> &Channel {
         &self.channels[id.index()]
