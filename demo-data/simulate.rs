@@ -16,6 +16,7 @@
 //! Reading order: [`random`], [`lift`], [`pump`], [`output`].
 #![allow(
     clippy::print_stderr,
+    unreachable_pub,
     reason = "a small program that says on standard error what went wrong"
 )]
 

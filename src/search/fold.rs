@@ -4,6 +4,7 @@
 //! (the simplest) stands for them; they are different templates all the same,
 //! and are never merged in the e-graph.
 
+use std::cmp::Ordering;
 use std::collections::BTreeMap;
 
 use crate::embedding::Embedding;
@@ -59,7 +60,8 @@ fn key(embedding: &Embedding) -> Vec<u64> {
 /// all traces have the same height. FNV-1a over quantised values: two columns
 /// that differ by rounding noise alone agree.
 fn column_digest(column: &[f64]) -> Option<u64> {
-    if column.windows(2).all(|pair| pair[0] == pair[1]) {
+    let same = |pair: &[f64]| pair[0].partial_cmp(&pair[1]) == Some(Ordering::Equal);
+    if column.windows(2).all(same) {
         return None;
     }
     let finite = column.iter().copied().filter(|height| height.is_finite());

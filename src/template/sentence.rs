@@ -80,19 +80,24 @@ impl Writer<'_> {
             Node::Throughout(window, operand) => self.throughout(window, operand, place),
             Node::Sometime(window, operand) => self.sometime(window, operand, place),
             Node::Until(window, left, right) => {
-                let left = self.grouped(left, place.below(window, Place::Weak));
+                let left = self.operand(left, place.below(window, Place::Weak));
                 let when = self.deadline(window, place);
-                let right = self.grouped(right, place.below(window, Place::Strong));
+                let right = self.operand(right, place.below(window, Place::Strong));
                 format!("{left} until {right}{when}")
             }
         }
     }
 
-    /// An operand of a longer phrase; what has parts of its own is marked off.
-    fn grouped(&mut self, formula: &Formula, place: Place) -> String {
+    /// An operand of a longer phrase: `both` and `either` say where a phrase
+    /// with parts of its own begins.
+    fn operand(&mut self, formula: &Formula, place: Place) -> String {
         let text = self.formula(formula, place);
         match formula.node() {
-            Node::And(_) | Node::Or(_) | Node::Until(..) => format!("({text})"),
+            Node::And(operands) if operands.len() == 2 => format!("both {text}"),
+            Node::And(_) => format!("all of: {text}"),
+            Node::Or(_) if implication(formula).is_none() && !text.starts_with("whenever") => {
+                format!("either {text}")
+            }
             _ => text,
         }
     }
@@ -100,14 +105,12 @@ impl Writer<'_> {
     fn joined(&mut self, operands: &[Formula], place: Place, word: &str) -> String {
         let parts: Vec<String> = operands
             .iter()
-            .map(|operand| {
-                let text = self.formula(operand, place);
-                match operand.node() {
-                    Node::Or(_) | Node::And(_) | Node::Until(..) => format!("({text})"),
-                    _ => text,
-                }
-            })
+            .map(|operand| self.operand(operand, place))
             .collect();
+        let has_parts = |f: &Formula| matches!(f.node(), Node::And(_) | Node::Or(_));
+        if operands.iter().any(has_parts) {
+            return parts.join(&format!(",{word}"));
+        }
         parts.join(word)
     }
 
@@ -134,38 +137,47 @@ impl Writer<'_> {
     }
 
     fn throughout(&mut self, window: &Window, operand: &Formula, place: Place) -> String {
-        let start_is_zero = matches!(window.lower(), Bound::After(low) if low.is_zero());
-        if start_is_zero && window.upper() == Bound::End && place == Place::Outermost {
+        if *window == Window::whole() && place == Place::Outermost {
             let text = self.formula(operand, Place::Weak);
-            let whole = match operand.node() {
+            return match operand.node() {
                 Node::Or(_) if text.starts_with("each time") || text.starts_with("whenever") => {
                     text
                 }
-                Node::Sometime(inner, _) if is_gap(inner) => format!("at every instant, {text}"),
-                Node::Or(_) | Node::Throughout(..) | Node::Sometime(..) | Node::Until(..) => {
+                Node::Atom(_) | Node::And(_) => format!("throughout the record, {text}"),
+                Node::Sometime(..) => format!("from every instant on, {text}"),
+                Node::Or(_) | Node::Throughout(..) | Node::Until(..) => {
                     format!("at every instant, {text}")
                 }
-                Node::Atom(_) | Node::And(_) => format!("throughout the record, {text}"),
             };
-            return whole;
         }
         let span = self.span(window, place);
-        let text = self.grouped(operand, place.below(window, Place::Weak));
-        format!("{text} {span}")
+        let text = self.formula(operand, place.below(window, Place::Weak));
+        match operand.node() {
+            Node::Atom(_) => format!("{text} {span}"),
+            Node::Or(_) => format!("{span}, at every instant {text}"),
+            _ => format!("{span}, {text}"),
+        }
     }
 
     fn sometime(&mut self, window: &Window, operand: &Formula, place: Place) -> String {
-        let start_is_zero = matches!(window.lower(), Bound::After(low) if low.is_zero());
-        if start_is_zero && window.upper() == Bound::End {
-            let text = self.grouped(operand, Place::Strong);
-            return match place {
-                Place::Outermost => format!("at some time {text}"),
-                Place::Weak | Place::Strong => format!("then or later, {text}"),
+        if *window == Window::whole() {
+            let text = self.formula(operand, Place::Strong);
+            return match (place, operand.node()) {
+                (Place::Outermost, Node::Atom(_)) => format!("at some time {text}"),
+                (Place::Outermost, _) => format!("at some time, {text}"),
+                (_, Node::Atom(_)) => format!("{text} then or later"),
+                _ => format!("then or later, {text}"),
             };
         }
         let when = self.deadline(window, place);
-        let text = self.grouped(operand, place.below(window, Place::Strong));
-        format!("{text}{when}")
+        let text = self.formula(operand, place.below(window, Place::Strong));
+        match operand.node() {
+            Node::Atom(_) => format!("{text}{when}"),
+            Node::And(_) | Node::Or(_) => format!("at an instant{when}, {text}"),
+            Node::Throughout(..) | Node::Sometime(..) | Node::Until(..) => {
+                format!("{text}, starting{when}")
+            }
+        }
     }
 
     /// How long something holds.
@@ -272,10 +284,6 @@ impl Writer<'_> {
     }
 }
 
-fn is_gap(window: &Window) -> bool {
-    window.upper() != Bound::End
-}
-
 fn reference(from_start: bool) -> &'static str {
     if from_start {
         "after the start"
@@ -373,7 +381,24 @@ mod tests {
         );
         check(
             "sometime [0, end] (throughout [0, 40 s] (temperature >= 71))",
-            "At some time the temperature is at or above 71 for 40 s.",
+            "At some time, the temperature is at or above 71 for 40 s.",
+        );
+        check(
+            "sometime [0, end] (throughout [0, ?] (brake and speed >= ?))",
+            "At some time, for ?1, brake is on and the speed is at or above ?2.",
+        );
+        check(
+            "throughout [0, end] (rises(call) implies sometime [0, ?] (throughout [0, 2 s] (x <= 3)))",
+            "Each time call comes on, the x is at or below 3 for 2 s or until the record ends, \
+             starting within ?1.",
+        );
+        check(
+            "throughout [0, end] (sometime [0, ?] (x <= ? and a))",
+            "From every instant on, at an instant within ?1, the x is at or below ?2 and a is on.",
+        );
+        check(
+            "throughout [0, end] ((a or b) and c)",
+            "Throughout the record, either a is on or b is on, and c is on.",
         );
         check(
             "(speed <= ?) until [0, end] locked",
