@@ -6,7 +6,6 @@ use std::path::Path;
 
 #[allow(
     dead_code,
-    unreachable_pub,
     reason = "the program is used here without its main function"
 )]
 #[path = "../demo-data/simulate.rs"]
