@@ -6,6 +6,14 @@
 //! is its embedding, and each entry is a specification: the template at that
 //! grid point and height.
 
+mod embed;
+mod grid;
+mod resolve;
 mod table;
 
+pub use embed::{
+    DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_all, embed_with, verdicts,
+};
+pub use grid::{threshold_points, time_points};
+pub use resolve::{ResolveError, resolve, resolve_derived};
 pub use table::{Axis, Embedding};

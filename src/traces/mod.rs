@@ -9,6 +9,8 @@
 //! Samples lie trace after trace in one vector a signal, so that one trace's
 //! samples are a slice, and traces may differ in length.
 
+mod derive;
 mod set;
 
+pub use derive::DeriveError;
 pub use set::{Channel, Grid, Labels, Record, TraceSet};

@@ -1,0 +1,226 @@
+//! The embedding of a template: exact heights at every grid point.
+
+use rayon::prelude::*;
+
+use super::grid::{threshold_points, time_points};
+use super::resolve::{ResolveError, resolve_derived};
+use super::table::{Axis, Embedding};
+use crate::kernels::boundary::{Fill, NEVER, Problem, Ranks, demand};
+use crate::kernels::{Limit, Resolved, Shape, Span, Step, naive};
+use crate::support::{SignalId, SlotId, TraceId};
+use crate::template::{Direction, Formula, SlotKind};
+use crate::traces::TraceSet;
+
+/// Points of an axis when nothing else is said.
+pub const DEFAULT_POINTS: usize = 16;
+
+/// Why a template has no embedding on a trace set.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+pub enum EmbedError {
+    /// It does not fit the data.
+    #[error(transparent)]
+    Resolve(#[from] ResolveError),
+    /// It has no slot.
+    #[error("`{0}` has no slot, so there is nothing to measure; write `?` for a number")]
+    NoSlot(Formula),
+}
+
+/// The slot that is solved when nothing else is said: the first threshold,
+/// else the first slot.
+pub fn default_height(formula: &Formula) -> Option<SlotId> {
+    let slots = formula.slots();
+    let threshold = |slot: &&crate::template::Slot| matches!(slot.kind, SlotKind::Threshold(_));
+    let first = slots.iter().position(|slot| threshold(&slot));
+    first.or((!slots.is_empty()).then_some(0)).map(SlotId::at)
+}
+
+/// The axes of a template on a trace set: every slot but the height.
+///
+/// # Errors
+/// When the template does not fit the data.
+pub fn axes(
+    formula: &Formula,
+    traces: &TraceSet,
+    height: SlotId,
+    points: usize,
+) -> Result<Vec<Axis>, EmbedError> {
+    let mut axes = Vec::new();
+    let resolved = resolve_derived(formula, traces)?;
+    for (position, slot) in formula.slots().iter().enumerate() {
+        let id = SlotId::at(position);
+        if id == height {
+            continue;
+        }
+        let points = match &slot.kind {
+            SlotKind::Time => {
+                // An upper bound below the lower one would make an empty window.
+                let least = lower_bound(&resolved, id).unwrap_or(0);
+                let mut times = time_points(traces.longest(), points);
+                times.retain(|time| *time >= f64::from(least));
+                if times.is_empty() {
+                    times.push(f64::from(least));
+                }
+                times
+            }
+            SlotKind::Threshold(signal) => {
+                let signal = traces
+                    .signal_id(signal)
+                    .ok_or_else(|| ResolveError::from(traces.unknown(signal)))?;
+                threshold_points(traces, signal, points)
+            }
+        };
+        axes.push(Axis { slot: id, points });
+    }
+    Ok(axes)
+}
+
+/// The embedding of a template with default height and axes. The trace set
+/// must have all signals of the template already.
+///
+/// # Errors
+/// When the template has no slot or does not fit the data.
+pub fn embed(formula: &Formula, traces: &TraceSet) -> Result<Embedding, EmbedError> {
+    let height = default_height(formula).ok_or_else(|| EmbedError::NoSlot(formula.clone()))?;
+    let axes = axes(formula, traces, height, DEFAULT_POINTS)?;
+    embed_with(formula, traces, height, axes)
+}
+
+/// The embedding of a template with a given height and axes.
+///
+/// # Errors
+/// When the template does not fit the data.
+pub fn embed_with(
+    formula: &Formula,
+    traces: &TraceSet,
+    height: SlotId,
+    axes: Vec<Axis>,
+) -> Result<Embedding, EmbedError> {
+    let resolved = resolve_derived(formula, traces)?;
+    let mut embedding = Embedding {
+        formula: formula.clone(),
+        height,
+        axes,
+        columns: Vec::new(),
+    };
+    let ranks = height_ranks(&resolved, height, traces);
+    let cells: usize = embedding
+        .axes
+        .iter()
+        .map(|axis| axis.points.len())
+        .product();
+    let fills: Vec<Vec<Fill>> = (0..cells).map(|cell| fills(&embedding, cell)).collect();
+    for fills in &fills {
+        let heights = traces.traces().map(|trace| {
+            let problem = Problem {
+                record: traces.record(trace),
+                fills,
+                ranks: &ranks,
+            };
+            let demand = demand(&resolved, problem);
+            height_of(&embedding, demand, &ranks, traces.length(trace))
+        });
+        embedding.columns.push(heights.collect());
+    }
+    Ok(embedding)
+}
+
+/// The embeddings of many templates, in their order, on all cores.
+pub fn embed_all(formulas: &[Formula], traces: &TraceSet) -> Vec<Result<Embedding, EmbedError>> {
+    formulas
+        .par_iter()
+        .map(|formula| embed(formula, traces))
+        .collect()
+}
+
+/// The verdict of a specification on every trace.
+///
+/// # Errors
+/// When it does not fit the data.
+pub fn verdicts(formula: &Formula, traces: &TraceSet) -> Result<Vec<bool>, ResolveError> {
+    let resolved = resolve_derived(formula, traces)?;
+    let ids: Vec<TraceId> = traces.traces().collect();
+    Ok(ids
+        .par_iter()
+        .map(|trace| naive::satisfied(&resolved, traces.record(*trace)))
+        .collect())
+}
+
+/// What each slot stands for at a grid point.
+fn fills(embedding: &Embedding, cell: usize) -> Vec<Fill> {
+    let formula = &embedding.formula;
+    let mut fills = vec![Fill::Height; formula.slots().len()];
+    for (axis, at) in embedding.axes.iter().zip(embedding.position(cell)) {
+        fills[axis.slot.index()] = match formula.slot(axis.slot).kind {
+            SlotKind::Threshold(_) => Fill::Threshold(axis.points[at]),
+            SlotKind::Time => Fill::Steps(axis.points[at] as u32),
+        };
+    }
+    fills
+}
+
+/// The ranks of the signal that the height limits; of nothing for a time.
+fn height_ranks(resolved: &Resolved, height: SlotId, traces: &TraceSet) -> Ranks {
+    let mut values = Vec::new();
+    if let Some(signal) = signal_of(resolved, height) {
+        values = traces.channel(signal).samples.clone();
+        values.retain(|sample| !sample.is_nan());
+        values.sort_unstable_by(f64::total_cmp);
+        values.dedup();
+    }
+    Ranks { values }
+}
+
+/// The signal that a threshold slot limits.
+fn signal_of(resolved: &Resolved, slot: SlotId) -> Option<SignalId> {
+    match &resolved.shape {
+        Shape::Compare { signal, limit, .. } => (*limit == Limit::Slot(slot)).then_some(*signal),
+        Shape::Flag { .. } => None,
+        Shape::And(operands) | Shape::Or(operands) => {
+            operands.iter().find_map(|operand| signal_of(operand, slot))
+        }
+        Shape::Throughout(_, operand) | Shape::Sometime(_, operand) => signal_of(operand, slot),
+        Shape::Until(_, left, right) => signal_of(left, slot).or_else(|| signal_of(right, slot)),
+    }
+}
+
+/// The constant lower bound of the window that a slot is the upper bound of.
+fn lower_bound(resolved: &Resolved, slot: SlotId) -> Option<u32> {
+    let own = |span: &Span| match (span.lower, span.upper) {
+        (Step::At(lower), Step::Slot(upper)) if upper == slot => Some(lower),
+        _ => None,
+    };
+    match &resolved.shape {
+        Shape::Compare { .. } | Shape::Flag { .. } => None,
+        Shape::And(operands) | Shape::Or(operands) => operands
+            .iter()
+            .find_map(|operand| lower_bound(operand, slot)),
+        Shape::Throughout(span, operand) | Shape::Sometime(span, operand) => {
+            own(span).or_else(|| lower_bound(operand, slot))
+        }
+        Shape::Until(span, left, right) => own(span)
+            .or_else(|| lower_bound(left, slot))
+            .or_else(|| lower_bound(right, slot)),
+    }
+}
+
+/// A demand as a height.
+fn height_of(embedding: &Embedding, demand: u32, ranks: &Ranks, length: usize) -> f64 {
+    let slot = embedding.formula.slot(embedding.height);
+    if demand == 0 {
+        return embedding.always();
+    }
+    if demand == NEVER {
+        return embedding.never();
+    }
+    let place = demand as usize;
+    match (&slot.kind, slot.direction) {
+        (SlotKind::Threshold(_), Direction::LargerIsEasier) => ranks.values[place - 1],
+        (SlotKind::Threshold(_), Direction::LargerIsHarder) => {
+            ranks.values[ranks.values.len() - place]
+        }
+        // A time beyond the record says nothing about the trace.
+        (SlotKind::Time, Direction::LargerIsEasier) if place > length => embedding.never(),
+        (SlotKind::Time, Direction::LargerIsEasier) => (place - 1) as f64,
+        (SlotKind::Time, Direction::LargerIsHarder) => (length - place) as f64,
+    }
+}
