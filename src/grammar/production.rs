@@ -1,0 +1,564 @@
+//! A grammar meets a palette: every rule, in every kind of place where it is
+//! used, becomes a list of pieces.
+//!
+//! A piece is a head with parts. The head says what is built from the values of
+//! the parts and what it adds to size, slots and flags; so counting and listing
+//! need to know nothing about the language. Pieces live in one arena and refer
+//! to each other by index; a rule used in one kind of place is one piece,
+//! however often it is used, which is how `f and f` is known to have the same
+//! rule on both sides.
+
+use std::collections::BTreeMap;
+use std::ops::Range;
+
+use super::file::{Alternative, Binding, Grammar, Pool};
+use super::palette::Palette;
+use crate::support::Finite;
+use crate::template::{
+    Ast, AstKind, Bound, Comparison, Duration, FUNCTIONS, Formula, Function, Kind, Signal,
+    TextError, Threshold, TimeUnit, UntilNotNegatable, Window,
+};
+
+/// A mistake in a grammar that shows when its rules are put together.
+pub type ProductionError = TextError;
+
+/// What kind of thing a place needs.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
+pub(super) enum Place {
+    Formula,
+    Numeric,
+    Flag,
+    Time,
+}
+
+/// What a piece stands for.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) enum Value {
+    Formula(Formula),
+    Signal(Signal),
+    Bound(Bound),
+}
+
+/// The position of a piece in the arena.
+pub(super) type PieceId = usize;
+
+/// What is built, from how many parts.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) enum Head {
+    /// One of several pieces: a rule in a kind of place.
+    Choice(Vec<PieceId>),
+    /// A value of its own.
+    Leaf(Value),
+    Compare(Comparison, Threshold),
+    Flag,
+    Not,
+    And,
+    Or,
+    Throughout,
+    Sometime,
+    Until,
+    Derived(Function),
+}
+
+/// A head with its parts.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Piece {
+    pub(super) head: Head,
+    pub(super) parts: Vec<PieceId>,
+}
+
+/// All pieces of a grammar on a palette.
+#[derive(Debug, Clone)]
+pub(super) struct Productions {
+    pub(super) pieces: Vec<Piece>,
+    pub(super) goal: PieceId,
+    /// The piece of each rule as a formula, where it is used as one.
+    pub(super) formulas: BTreeMap<usize, PieceId>,
+}
+
+/// Puts a grammar and a palette together.
+pub(super) fn productions(
+    grammar: &Grammar,
+    palette: &Palette,
+) -> Result<Productions, ProductionError> {
+    let mut compiler = Compiler {
+        grammar,
+        palette,
+        pieces: Vec::new(),
+        rules: BTreeMap::new(),
+    };
+    let goal = compiler.rule(grammar.goal, Place::Formula)?;
+    let formulas = compiler
+        .rules
+        .iter()
+        .filter(|((_, place), _)| *place == Place::Formula)
+        .map(|((rule, _), piece)| (*rule, *piece))
+        .collect();
+    Ok(Productions {
+        pieces: compiler.pieces,
+        goal,
+        formulas,
+    })
+}
+
+impl Piece {
+    /// What the head adds to the size of its parts.
+    pub(super) fn size(&self) -> u32 {
+        match &self.head {
+            Head::And | Head::Or => self.parts.len() as u32 - 1,
+            Head::Throughout | Head::Sometime | Head::Until | Head::Derived(_) => 1,
+            Head::Leaf(Value::Signal(signal)) => signal.size(),
+            _ => 0,
+        }
+    }
+
+    /// Slots of the head.
+    pub(super) fn slots(&self) -> u32 {
+        match &self.head {
+            Head::Compare(_, Threshold::Slot) | Head::Leaf(Value::Bound(Bound::Slot)) => 1,
+            _ => 0,
+        }
+    }
+
+    /// Flag atoms of the head.
+    pub(super) fn flags(&self) -> u32 {
+        u32::from(self.head == Head::Flag)
+    }
+
+    /// Builds the value from the values of the parts; `None` where the parts
+    /// make nothing (an empty window, the negation of an `until`).
+    pub(super) fn build(&self, parts: &[&Value]) -> Option<Value> {
+        let formula = match &self.head {
+            Head::Choice(_) => return None,
+            Head::Leaf(value) => return Some(value.clone()),
+            Head::Derived(function) => return derived(*function, parts),
+            Head::Compare(comparison, threshold) => {
+                Formula::compare(parts[0].signal()?, *comparison, threshold.clone())
+            }
+            Head::Flag => Formula::flag(parts[0].signal()?, false),
+            Head::Not => negated(parts[0].formula()?).ok()?,
+            Head::And => Formula::and(formulas(parts)?),
+            Head::Or => Formula::or(formulas(parts)?),
+            Head::Throughout => Formula::throughout(window(parts)?, parts[2].formula()?),
+            Head::Sometime => Formula::sometime(window(parts)?, parts[2].formula()?),
+            Head::Until => Formula::until(
+                window(&parts[1..3])?,
+                parts[0].formula()?,
+                parts[3].formula()?,
+            ),
+        };
+        Some(Value::Formula(formula))
+    }
+}
+
+impl Value {
+    fn formula(&self) -> Option<Formula> {
+        match self {
+            Value::Formula(formula) => Some(formula.clone()),
+            _ => None,
+        }
+    }
+
+    fn signal(&self) -> Option<Signal> {
+        match self {
+            Value::Signal(signal) => Some(signal.clone()),
+            _ => None,
+        }
+    }
+
+    fn bound(&self) -> Option<Bound> {
+        match self {
+            Value::Bound(bound) => Some(*bound),
+            _ => None,
+        }
+    }
+}
+
+fn negated(formula: Formula) -> Result<Formula, UntilNotNegatable> {
+    formula.negated()
+}
+
+fn formulas(parts: &[&Value]) -> Option<Vec<Formula>> {
+    parts.iter().map(|part| part.formula()).collect()
+}
+
+fn window(parts: &[&Value]) -> Option<Window> {
+    Window::new(parts[0].bound()?, parts[1].bound()?).ok()
+}
+
+fn derived(function: Function, parts: &[&Value]) -> Option<Value> {
+    let count = function.shape().arguments.len();
+    let arguments = parts[..count]
+        .iter()
+        .map(|part| part.signal())
+        .collect::<Option<_>>()?;
+    let duration = match parts.get(count) {
+        None => None,
+        Some(part) => match part.bound()? {
+            Bound::After(duration) => Some(duration),
+            _ => return None,
+        },
+    };
+    Some(Value::Signal(Signal::derived(
+        function, arguments, duration,
+    )))
+}
+
+/// What the names bound in an alternative stand for.
+type Bindings = BTreeMap<String, Signal>;
+
+struct Compiler<'a> {
+    grammar: &'a Grammar,
+    palette: &'a Palette,
+    pieces: Vec<Piece>,
+    rules: BTreeMap<(usize, Place), PieceId>,
+}
+
+impl Compiler<'_> {
+    fn push(&mut self, head: Head, parts: Vec<PieceId>) -> PieceId {
+        self.pieces.push(Piece { head, parts });
+        self.pieces.len() - 1
+    }
+
+    fn leaf(&mut self, value: Value) -> PieceId {
+        self.push(Head::Leaf(value), Vec::new())
+    }
+
+    /// The piece of a rule in a kind of place. It is entered before its
+    /// alternatives are put together, so that recursion finds it.
+    fn rule(&mut self, rule: usize, place: Place) -> Result<PieceId, ProductionError> {
+        if let Some(piece) = self.rules.get(&(rule, place)) {
+            return Ok(*piece);
+        }
+        let piece = self.push(Head::Choice(Vec::new()), Vec::new());
+        self.rules.insert((rule, place), piece);
+        let mut alternatives: Vec<&Alternative> =
+            self.grammar.rules[rule].alternatives.iter().collect();
+        // Best first; equal weights stay in the order of the file.
+        alternatives.sort_by(|a, b| b.weight.total_cmp(&a.weight));
+        let mut choices = Vec::new();
+        for alternative in alternatives {
+            for bound in self.bindings(&alternative.bindings) {
+                choices.push(self.piece(&alternative.ast, place, &bound)?);
+            }
+        }
+        self.pieces[piece].head = Head::Choice(choices);
+        Ok(piece)
+    }
+
+    /// All ways to bind the names of an alternative.
+    fn bindings(&self, bindings: &[Binding]) -> Vec<Bindings> {
+        let mut all = vec![Bindings::new()];
+        for binding in bindings {
+            let pool: Vec<(Signal, Option<&str>)> = match binding.pool {
+                Pool::Channels => self
+                    .palette
+                    .channels
+                    .iter()
+                    .map(|(signal, unit)| (signal.clone(), unit.as_deref()))
+                    .collect(),
+                Pool::Flags => self
+                    .palette
+                    .flags
+                    .iter()
+                    .map(|f| (f.clone(), None))
+                    .collect(),
+            };
+            for name in &binding.names {
+                all = all
+                    .iter()
+                    .flat_map(|bound| extended(bound, name, binding, &pool))
+                    .collect();
+            }
+        }
+        all
+    }
+
+    fn piece(
+        &mut self,
+        ast: &Ast,
+        place: Place,
+        bound: &Bindings,
+    ) -> Result<PieceId, ProductionError> {
+        match (&ast.kind, place) {
+            (AstKind::Name { name, quoted }, _) => self.name(ast, name, *quoted, place, bound),
+            (AstKind::Call(name, arguments), Place::Numeric | Place::Flag) => {
+                self.call(ast, name, arguments, place, bound)
+            }
+            (AstKind::Call(..), Place::Formula) => {
+                let signal = self.piece(ast, Place::Flag, bound)?;
+                Ok(self.push(Head::Flag, vec![signal]))
+            }
+            (AstKind::Minus(left, right), Place::Numeric) => {
+                let sides = vec![
+                    self.piece(left, Place::Numeric, bound)?,
+                    self.piece(right, Place::Numeric, bound)?,
+                ];
+                Ok(self.push(Head::Derived(Function::Difference), sides))
+            }
+            (AstKind::Number(value, unit), Place::Time) => {
+                let duration = duration(*value, unit.as_deref(), &ast.span)?;
+                Ok(self.leaf(Value::Bound(Bound::After(duration))))
+            }
+            (AstKind::Slot(_), Place::Time) => Ok(self.leaf(Value::Bound(Bound::Slot))),
+            (AstKind::End, Place::Time) => Ok(self.leaf(Value::Bound(Bound::End))),
+            (_, Place::Formula) => self.formula(ast, bound),
+            _ => Err(misplaced(ast, place)),
+        }
+    }
+
+    fn formula(&mut self, ast: &Ast, bound: &Bindings) -> Result<PieceId, ProductionError> {
+        let place = Place::Formula;
+        match &ast.kind {
+            AstKind::Compare(left, comparison, right) => {
+                let threshold = threshold(right)?;
+                let signal = self.piece(left, Place::Numeric, bound)?;
+                Ok(self.push(Head::Compare(*comparison, threshold), vec![signal]))
+            }
+            AstKind::Not(operand) => {
+                let operand = self.piece(operand, place, bound)?;
+                Ok(self.push(Head::Not, vec![operand]))
+            }
+            AstKind::And(operands) => self.connective(Head::And, operands, bound),
+            AstKind::Or(operands) => self.connective(Head::Or, operands, bound),
+            AstKind::Implies(left, right) => {
+                let left = self.piece(left, place, bound)?;
+                let left = self.push(Head::Not, vec![left]);
+                let right = self.piece(right, place, bound)?;
+                Ok(self.push(Head::Or, vec![left, right]))
+            }
+            AstKind::Throughout(bounds, operand) => {
+                let mut parts = self.window(bounds, bound)?;
+                parts.push(self.piece(operand, place, bound)?);
+                Ok(self.push(Head::Throughout, parts))
+            }
+            AstKind::Sometime(bounds, operand) => {
+                let mut parts = self.window(bounds, bound)?;
+                parts.push(self.piece(operand, place, bound)?);
+                Ok(self.push(Head::Sometime, parts))
+            }
+            AstKind::Until(left, bounds, right) => {
+                let mut parts = vec![self.piece(left, place, bound)?];
+                parts.extend(self.window(bounds, bound)?);
+                parts.push(self.piece(right, place, bound)?);
+                Ok(self.push(Head::Until, parts))
+            }
+            _ => Err(misplaced(ast, place)),
+        }
+    }
+
+    fn connective(
+        &mut self,
+        head: Head,
+        operands: &[Ast],
+        bound: &Bindings,
+    ) -> Result<PieceId, ProductionError> {
+        let parts = operands
+            .iter()
+            .map(|operand| self.piece(operand, Place::Formula, bound))
+            .collect::<Result<_, _>>()?;
+        Ok(self.push(head, parts))
+    }
+
+    fn window(
+        &mut self,
+        bounds: &[Ast; 2],
+        bound: &Bindings,
+    ) -> Result<Vec<PieceId>, ProductionError> {
+        let parts = vec![
+            self.piece(&bounds[0], Place::Time, bound)?,
+            self.piece(&bounds[1], Place::Time, bound)?,
+        ];
+        if let [
+            Head::Leaf(Value::Bound(lower)),
+            Head::Leaf(Value::Bound(upper)),
+        ] = [&self.pieces[parts[0]].head, &self.pieces[parts[1]].head]
+        {
+            Window::new(*lower, *upper).map_err(|error| {
+                let span = bounds[0].span.start..bounds[1].span.end;
+                TextError::new(error.to_string(), span, "this window cannot be")
+            })?;
+        }
+        Ok(parts)
+    }
+
+    fn name(
+        &mut self,
+        ast: &Ast,
+        name: &str,
+        quoted: bool,
+        place: Place,
+        bound: &Bindings,
+    ) -> Result<PieceId, ProductionError> {
+        if !quoted && let Some(rule) = self.grammar.rule(name) {
+            return self.rule(rule, place);
+        }
+        if place == Place::Formula {
+            let signal = self.name(ast, name, quoted, Place::Flag, bound)?;
+            return Ok(self.push(Head::Flag, vec![signal]));
+        }
+        if place == Place::Time {
+            let duration = match name {
+                "short" => self.palette.short,
+                "long" => self.palette.long,
+                "hold" => self.palette.hold,
+                _ => return Err(misplaced(ast, place)),
+            };
+            return Ok(self.leaf(Value::Bound(Bound::After(duration))));
+        }
+        let kind = match place {
+            Place::Numeric => Kind::Numeric,
+            _ => Kind::Flag,
+        };
+        let signals: Vec<Signal> = match (bound.get(name), name, quoted, kind) {
+            (Some(signal), _, false, _) => vec![signal.clone()],
+            (_, "CHANNEL", false, Kind::Numeric) => self
+                .palette
+                .channels
+                .iter()
+                .map(|(signal, _)| signal.clone())
+                .collect(),
+            (_, "FLAG", false, Kind::Flag) => self.palette.flags.clone(),
+            (_, _, true, kind) => vec![Signal::Recorded {
+                name: name.into(),
+                kind,
+            }],
+            _ => return Err(misplaced(ast, place)),
+        };
+        if signals.iter().any(|signal| signal.kind() != kind) {
+            return Err(misplaced(ast, place));
+        }
+        let choices = signals
+            .into_iter()
+            .map(|s| self.leaf(Value::Signal(s)))
+            .collect();
+        Ok(self.push(Head::Choice(choices), Vec::new()))
+    }
+
+    fn call(
+        &mut self,
+        ast: &Ast,
+        name: &str,
+        arguments: &[Ast],
+        place: Place,
+        bound: &Bindings,
+    ) -> Result<PieceId, ProductionError> {
+        let function = Function::from_name(name).ok_or_else(|| {
+            let known: Vec<&str> = FUNCTIONS.iter().map(|shape| shape.name).collect();
+            TextError::new(
+                format!("there is no function `{name}`"),
+                ast.span.clone(),
+                "unknown function",
+            )
+            .with_help(format!("the functions are: {}", known.join(", ")))
+        })?;
+        let shape = function.shape();
+        let fits = match place {
+            Place::Numeric => shape.result == Kind::Numeric,
+            _ => shape.result == Kind::Flag,
+        };
+        if !fits {
+            return Err(misplaced(ast, place));
+        }
+        let expected = shape.arguments.len() + usize::from(shape.takes_duration);
+        if arguments.len() != expected {
+            return Err(TextError::new(
+                format!(
+                    "`{name}` takes {expected} argument(s), not {}",
+                    arguments.len()
+                ),
+                ast.span.clone(),
+                shape.definition,
+            ));
+        }
+        let places = shape.arguments.iter().map(|kind| match kind {
+            Kind::Numeric => Place::Numeric,
+            Kind::Flag => Place::Flag,
+        });
+        let parts = arguments
+            .iter()
+            .zip(places.chain([Place::Time]))
+            .map(|(argument, place)| self.piece(argument, place, bound))
+            .collect::<Result<_, _>>()?;
+        Ok(self.push(Head::Derived(function), parts))
+    }
+}
+
+/// A binding with one more name, for each signal that it can stand for.
+fn extended(
+    bound: &Bindings,
+    name: &str,
+    binding: &Binding,
+    pool: &[(Signal, Option<&str>)],
+) -> Vec<Bindings> {
+    let position = |signal: &Signal| pool.iter().position(|(other, _)| other == signal);
+    let earlier: Vec<usize> = binding
+        .names
+        .iter()
+        .filter_map(|name| position(bound.get(name)?))
+        .collect();
+    let allowed = |candidate: usize| {
+        earlier.iter().all(|other| {
+            candidate != *other
+                && (!binding.unordered
+                    || (candidate > *other && pool[candidate].1 == pool[*other].1))
+        })
+    };
+    (0..pool.len())
+        .filter(|candidate| allowed(*candidate))
+        .map(|candidate| {
+            let mut more = bound.clone();
+            more.insert(name.to_owned(), pool[candidate].0.clone());
+            more
+        })
+        .collect()
+}
+
+fn threshold(ast: &Ast) -> Result<Threshold, ProductionError> {
+    match &ast.kind {
+        AstKind::Slot(_) => Ok(Threshold::Slot),
+        AstKind::Number(value, unit) => {
+            let value = finite(*value, &ast.span)?;
+            Ok(Threshold::Number(value, unit.as_deref().map(Into::into)))
+        }
+        _ => Err(TextError::new(
+            "the right side of a comparison must be a number or a slot",
+            ast.span.clone(),
+            "expected a number or `?`",
+        )),
+    }
+}
+
+fn duration(value: f64, unit: Option<&str>, span: &Range<usize>) -> Result<Duration, TextError> {
+    let unit = match unit {
+        None => TimeUnit::Data,
+        Some(name) => TimeUnit::from_name(name).ok_or_else(|| {
+            TextError::new(
+                format!("`{name}` is not a unit of time"),
+                span.clone(),
+                "expected us, ms, s, min, h, d or step",
+            )
+        })?,
+    };
+    let value = finite(value, span)?;
+    Ok(Duration { value, unit })
+}
+
+fn finite(value: f64, span: &Range<usize>) -> Result<Finite, TextError> {
+    Finite::new(value)
+        .map_err(|error| TextError::new(error.to_string(), span.clone(), "not finite"))
+}
+
+fn misplaced(ast: &Ast, place: Place) -> TextError {
+    let needed = match place {
+        Place::Formula => "a formula",
+        Place::Numeric => "a numeric channel",
+        Place::Flag => "a flag",
+        Place::Time => "a duration",
+    };
+    TextError::new(
+        format!("{needed} is needed here"),
+        ast.span.clone(),
+        format!("this is not {needed}"),
+    )
+}
