@@ -39,4 +39,4 @@ pub mod handover;
 
 pub mod report;
 
-// pub mod cli;
+pub mod cli;

@@ -114,7 +114,7 @@ fn unordered_counts_are_the_published_sequences() {
 }
 
 /// The recurrence of `open-start` with slots: F(n, k) = A(n, k) + 2 F(n-1, k-1)
-/// + pairs, goal G(n, k) = F(n-1, k) + 2 F(n-1, k-1) + until, at most three
+/// plus pairs, goal G(n, k) = F(n-1, k) + 2 F(n-1, k-1) + until, at most three
 /// slots; written out here by loops of its own.
 #[test]
 fn open_start_follows_its_recurrence() {
@@ -166,7 +166,7 @@ fn pairs(f: &[[[u128; 4]; 8]], size: usize, slots: usize, flags: usize) -> (u128
             }
         }
     }
-    let halves = size % 2 == 0 && slots % 2 == 0 && flags % 2 == 0 && size > 0;
+    let halves = [size, slots, flags].iter().all(|n| n.is_multiple_of(2)) && size > 0;
     let equal = if halves {
         f[size / 2][slots / 2][flags / 2]
     } else {

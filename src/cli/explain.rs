@@ -32,7 +32,9 @@ pub(super) fn run(arguments: &Arguments) -> Result<u8, CliError> {
     let reader = RunReader::open(&arguments.run)?;
     let explanations = read_all(&reader)?;
     let found = match &arguments.id {
-        None => explanations.first().ok_or_else(|| nothing_ranked(&reader))?,
+        None => explanations
+            .first()
+            .ok_or_else(|| nothing_ranked(&reader))?,
         Some(id) => find(&reader, &explanations, id)?,
     };
     if arguments.json {

@@ -51,3 +51,43 @@ fn read_slot(text: &str, template: &Formula) -> Result<SlotId, CliError> {
             ))
         })
 }
+
+/// Runs the command.
+pub(super) fn run(arguments: &Arguments) -> Result<u8, CliError> {
+    let template = read_template(&arguments.template)?;
+    let height = match &arguments.height {
+        Some(text) => Some(read_slot(text, &template)?),
+        None => None,
+    };
+    let mut traces = arguments.traces.load()?.traces;
+    let options = MeasureOptions {
+        height,
+        points: arguments.points,
+    };
+    let table = embedding::measure(&template, &mut traces, &options)
+        .map_err(|error| CliError::input(error.to_string()))?;
+    if arguments.json {
+        terminal::print_json(&table)?;
+        return Ok(0);
+    }
+    let mut writer = csv::Writer::from_writer(Vec::new());
+    let header: Vec<&str> = std::iter::once("trace")
+        .chain(table.columns.iter().map(String::as_str))
+        .collect();
+    let rows = table.rows.iter().map(|row| {
+        let cells = row.heights.iter().map(String::as_str);
+        std::iter::once(row.trace.as_str())
+            .chain(cells)
+            .collect::<Vec<&str>>()
+    });
+    for record in std::iter::once(header).chain(rows) {
+        writer
+            .write_record(record)
+            .map_err(|error| CliError::failed(format!("the table cannot be written: {error}")))?;
+    }
+    let bytes = writer
+        .into_inner()
+        .map_err(|error| CliError::failed(error.to_string()))?;
+    terminal::print(&String::from_utf8_lossy(&bytes))?;
+    Ok(0)
+}

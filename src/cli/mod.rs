@@ -7,7 +7,6 @@
 
 mod arguments;
 mod assign;
-mod equal;
 mod error;
 mod explain;
 mod grammar;
@@ -15,6 +14,7 @@ mod handover;
 mod measure;
 mod progress;
 mod ranking;
+mod run_file;
 mod search;
 mod terminal;
 
@@ -63,8 +63,6 @@ enum Command {
     Measure(measure::Arguments),
     /// Check and count a grammar
     Grammar(grammar::Arguments),
-    /// Whether two templates are the same: the reason, or a trace that tells them apart
-    Equal(equal::Arguments),
     /// Print a shell's completion script
     #[command(hide = true)]
     Completions(arguments::Shell),
@@ -100,7 +98,6 @@ fn dispatch(command: Command) -> Result<u8, CliError> {
         Command::Assign(arguments) => assign::run(&arguments),
         Command::Measure(arguments) => measure::run(&arguments),
         Command::Grammar(arguments) => grammar::run(&arguments),
-        Command::Equal(arguments) => equal::run(&arguments),
         Command::Completions(shell) => shell.print(&mut Cli::command()),
     }
 }

@@ -33,14 +33,22 @@ pub(super) fn run(arguments: &Arguments) -> Result<u8, CliError> {
     if arguments.json {
         terminal::print_json(&ranking)?;
     } else {
-        terminal::print(&report::ranking(&ranking, terminal::width(), arguments.entries))?;
+        terminal::print(&report::ranking(
+            &ranking,
+            terminal::width(),
+            arguments.entries,
+        ))?;
     }
     Ok(0)
 }
 
 /// The ranking of a run.
 pub(super) fn read(reader: &RunReader) -> Result<Ranking, CliError> {
-    let entries: Vec<Value> = reader.ranking()?.into_iter().map(|(entry, _)| entry).collect();
+    let entries: Vec<Value> = reader
+        .ranking()?
+        .into_iter()
+        .map(|(entry, _)| entry)
+        .collect();
     let document = json!({
         "schema": RANKING_SCHEMA,
         "run": reader.fact("facts")?,

@@ -8,6 +8,7 @@
 
 mod embed;
 mod grid;
+mod measure;
 mod resolve;
 mod table;
 
@@ -15,5 +16,6 @@ pub use embed::{
     DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_all, embed_with, verdicts,
 };
 pub use grid::{threshold_points, time_points};
+pub use measure::{MeasureOptions, MeasureRow, MeasureTable, measure};
 pub use resolve::{ResolveError, resolve, resolve_derived};
 pub use table::{Axis, Embedding};

@@ -144,7 +144,7 @@ impl Counter<'_> {
             let (a, b) = (self.table(part, left), self.table(part, right));
             add(&mut pairs, &times(&a, &b));
         }
-        if rest % 2 == 0 {
+        if rest.is_multiple_of(2) {
             for ((slots, flags), count) in self.table(part, rest / 2) {
                 add(&mut pairs, &Table::from([((2 * slots, 2 * flags), count)]));
             }

@@ -1,6 +1,7 @@
 //! Sorting traces by a hand-over file.
 
 use super::file::{Handover, HandoverError};
+use crate::description::{self, Ballot, ballot};
 use crate::template::Formula;
 
 /// Where a trace belongs.
@@ -15,9 +16,7 @@ pub struct Assignment {
 
 /// A rule ready to be tried on traces.
 struct Rule {
-    group: usize,
-    precision: f64,
-    recall: f64,
+    ballot: Ballot,
     /// Positions in the list of specifications, and the verdict each must have.
     literals: Vec<(usize, bool)>,
 }
@@ -66,9 +65,11 @@ fn rules(
             // A file is checked when it is read, so the group is in the list.
             if let Some(group) = handover.groups.iter().position(|name| *name == rule.group) {
                 rules.push(Rule {
-                    group,
-                    precision: rule.precision,
-                    recall: rule.recall,
+                    ballot: Ballot {
+                        group,
+                        precision: rule.precision,
+                        recall: rule.recall,
+                    },
                     literals,
                 });
             }
@@ -78,43 +79,23 @@ fn rules(
     Ok(templates)
 }
 
-/// Counts the votes on one trace. Equal numbers of votes are told apart by the
-/// sum of the rules' precisions, then by the order of the groups.
+/// Counts the votes on one trace.
 fn elect(templates: &[Vec<Rule>], groups: usize, table: &[Vec<bool>], trace: usize) -> Assignment {
-    let mut votes = vec![(0usize, 0.0f64); groups];
-    for rules in templates {
-        if let Some(rule) = choice(rules, table, trace) {
-            votes[rule.group].0 += 1;
-            votes[rule.group].1 += rule.precision;
-        }
-    }
-    let mut best: Option<usize> = None;
-    for (group, tally) in votes.iter().enumerate() {
-        if tally.0 > 0 && best.is_none_or(|other| *tally > votes[other]) {
-            best = Some(group);
-        }
-    }
-    Assignment {
-        group: best,
-        votes: best.map_or(0, |group| votes[group].0),
-    }
-}
-
-/// The rule of a template that speaks for a trace: of those that fit, the one
-/// with the best precision, then recall.
-fn choice<'a>(rules: &'a [Rule], table: &[Vec<bool>], trace: usize) -> Option<&'a Rule> {
     let fits = |rule: &&Rule| {
-        rule.literals
-            .iter()
-            .all(|(position, satisfied)| table[*position][trace] == *satisfied)
+        let mut literals = rule.literals.iter();
+        literals.all(|(position, satisfied)| table[*position][trace] == *satisfied)
     };
-    let mut chosen: Option<&Rule> = None;
-    for rule in rules.iter().filter(fits) {
-        let better = chosen
-            .is_none_or(|other| (rule.precision, rule.recall) > (other.precision, other.recall));
-        if better {
-            chosen = Some(rule);
-        }
+    let ballots = templates
+        .iter()
+        .filter_map(|rules| ballot(rules.iter().filter(fits).map(|rule| rule.ballot)));
+    match description::elect(ballots, groups) {
+        Some((group, votes)) => Assignment {
+            group: Some(group),
+            votes,
+        },
+        None => Assignment {
+            group: None,
+            votes: 0,
+        },
     }
-    chosen
 }
