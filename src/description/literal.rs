@@ -4,6 +4,7 @@ use std::cmp::Ordering;
 
 use super::number::{nice_number, nice_steps};
 use crate::embedding::Embedding;
+use crate::scoring::is_usable;
 use crate::template::{Direction, Formula, SlotKind};
 use crate::traces::Grid;
 
@@ -82,7 +83,12 @@ impl<'a> LiteralSearch<'a> {
     pub(super) fn cuts(&self, wanted: &[bool], considered: &[bool]) -> Vec<Cut> {
         let total = wanted.iter().filter(|wanted| **wanted).count();
         let best: Vec<Option<Cut>> = (0..self.orders.len())
-            .map(|column| self.best_cut(column, wanted, considered, total))
+            .map(|column| {
+                let usable = is_usable(self.embedding, column);
+                usable
+                    .then(|| self.best_cut(column, wanted, considered, total))
+                    .flatten()
+            })
             .collect();
         let quality = |column: usize| best.get(column).copied().flatten().map(|cut| cut.quality);
         let mut cuts: Vec<Cut> = Vec::new();

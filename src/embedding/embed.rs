@@ -5,8 +5,9 @@ use rayon::prelude::*;
 use super::grid::{threshold_points, time_points};
 use super::resolve::{ResolveError, resolve_derived};
 use super::table::{Axis, Embedding};
-use crate::kernels::boundary::{Fill, NEVER, Problem, Ranks, demand};
-use crate::kernels::{Limit, Resolved, Shape, Span, Step, naive};
+use crate::kernels::{
+    Evaluation, Fill, Limit, NEVER, Plan, PlanAxis, Resolved, Shape, Span, Step, naive,
+};
 use crate::support::{SignalId, SlotId, TraceId};
 use crate::template::{Direction, Formula, SlotKind};
 use crate::traces::TraceSet;
@@ -102,24 +103,29 @@ pub fn embed_with(
         axes,
         columns: Vec::new(),
     };
-    let ranks = height_ranks(&resolved, height, traces);
+    let plan_axes = embedding
+        .axes
+        .iter()
+        .map(|axis| plan_axis(formula, axis))
+        .collect();
+    let plan = Plan::new(&resolved, formula.slots().len(), plan_axes);
+    let values: &[f64] = match signal_of(&resolved, height) {
+        Some(signal) => traces.distinct_values(signal),
+        None => &[],
+    };
     let cells: usize = embedding
         .axes
         .iter()
         .map(|axis| axis.points.len())
         .product();
-    let fills: Vec<Vec<Fill>> = (0..cells).map(|cell| fills(&embedding, cell)).collect();
-    for fills in &fills {
-        let heights = traces.traces().map(|trace| {
-            let problem = Problem {
-                record: traces.record(trace),
-                fills,
-                ranks: &ranks,
-            };
-            let demand = demand(&resolved, problem);
-            height_of(&embedding, demand, &ranks, traces.length(trace))
-        });
-        embedding.columns.push(heights.collect());
+    embedding.columns = vec![Vec::with_capacity(traces.count()); cells];
+    for trace in traces.traces() {
+        let mut evaluation = Evaluation::new(&plan, traces.record(trace), values);
+        let demands = evaluation.demands_of_grid();
+        for (cell, demand) in demands.into_iter().enumerate() {
+            let height = height_of(&embedding, demand, values, traces.length(trace));
+            embedding.columns[cell].push(height);
+        }
     }
     Ok(embedding)
 }
@@ -145,29 +151,16 @@ pub fn verdicts(formula: &Formula, traces: &TraceSet) -> Result<Vec<bool>, Resol
         .collect())
 }
 
-/// What each slot stands for at a grid point.
-fn fills(embedding: &Embedding, cell: usize) -> Vec<Fill> {
-    let formula = &embedding.formula;
-    let mut fills = vec![Fill::Height; formula.slots().len()];
-    for (axis, at) in embedding.axes.iter().zip(embedding.position(cell)) {
-        fills[axis.slot.index()] = match formula.slot(axis.slot).kind {
-            SlotKind::Threshold(_) => Fill::Threshold(axis.points[at]),
-            SlotKind::Time => Fill::Steps(axis.points[at] as u32),
-        };
+/// An axis as the kernels know it.
+fn plan_axis(formula: &Formula, axis: &Axis) -> PlanAxis {
+    let fill = |point: &f64| match formula.slot(axis.slot).kind {
+        SlotKind::Threshold(_) => Fill::Threshold(*point),
+        SlotKind::Time => Fill::Steps(*point as u32),
+    };
+    PlanAxis {
+        slot: axis.slot,
+        fills: axis.points.iter().map(fill).collect(),
     }
-    fills
-}
-
-/// The ranks of the signal that the height limits; of nothing for a time.
-fn height_ranks(resolved: &Resolved, height: SlotId, traces: &TraceSet) -> Ranks {
-    let mut values = Vec::new();
-    if let Some(signal) = signal_of(resolved, height) {
-        values = traces.channel(signal).samples.clone();
-        values.retain(|sample| !sample.is_nan());
-        values.sort_unstable_by(f64::total_cmp);
-        values.dedup();
-    }
-    Ranks { values }
 }
 
 /// The signal that a threshold slot limits.
@@ -204,7 +197,7 @@ fn lower_bound(resolved: &Resolved, slot: SlotId) -> Option<u32> {
 }
 
 /// A demand as a height.
-fn height_of(embedding: &Embedding, demand: u32, ranks: &Ranks, length: usize) -> f64 {
+fn height_of(embedding: &Embedding, demand: u32, values: &[f64], length: usize) -> f64 {
     let slot = embedding.formula.slot(embedding.height);
     if demand == 0 {
         return embedding.always();
@@ -214,10 +207,8 @@ fn height_of(embedding: &Embedding, demand: u32, ranks: &Ranks, length: usize) -
     }
     let place = demand as usize;
     match (&slot.kind, slot.direction) {
-        (SlotKind::Threshold(_), Direction::LargerIsEasier) => ranks.values[place - 1],
-        (SlotKind::Threshold(_), Direction::LargerIsHarder) => {
-            ranks.values[ranks.values.len() - place]
-        }
+        (SlotKind::Threshold(_), Direction::LargerIsEasier) => values[place - 1],
+        (SlotKind::Threshold(_), Direction::LargerIsHarder) => values[values.len() - place],
         // A time beyond the record says nothing about the trace.
         (SlotKind::Time, Direction::LargerIsEasier) if place > length => embedding.never(),
         (SlotKind::Time, Direction::LargerIsEasier) => (place - 1) as f64,

@@ -24,17 +24,10 @@ pub fn time_points(longest: usize, points: usize) -> Vec<f64> {
 /// Quantiles follow the samples where they are; even spacing keeps levels where
 /// a channel that is mostly idle rarely goes.
 pub fn threshold_points(traces: &TraceSet, signal: SignalId, points: usize) -> Vec<f64> {
-    let mut samples: Vec<f64> = traces
-        .channel(signal)
-        .samples
-        .iter()
-        .copied()
-        .filter(|sample| !sample.is_nan())
-        .collect();
+    let samples = traces.sorted_samples(signal);
     if samples.is_empty() {
         return Vec::new();
     }
-    samples.sort_unstable_by(f64::total_cmp);
     let (low, high) = (samples[0], samples[samples.len() - 1]);
     let half = points.max(2) / 2;
     let mut grid = Vec::with_capacity(2 * half);

@@ -8,9 +8,14 @@
 //! demand, disjunction the smaller; `throughout` is a sliding maximum,
 //! `sometime` a sliding minimum. Nothing is searched for, so heights are exact.
 
-use super::resolved::{Limit, Reading, Resolved, Shape, Span, Step};
-use super::window::{sliding_max, sliding_min};
+use std::rc::Rc;
+
+use super::plan::{Op, Plan};
+use super::resolved::{Limit, Reading, Span, Step};
+use super::runs;
+use super::window::{fold_at, sliding_max, sliding_min};
 use crate::support::{SignalId, SlotId};
+use crate::template::{Comparison, Direction};
 use crate::traces::Record;
 
 /// The demand that no value meets.
@@ -27,113 +32,171 @@ pub enum Fill {
     Steps(u32),
 }
 
-/// Ranks of a signal's values over all traces: what makes demands of
-/// thresholds whole numbers.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Ranks {
-    /// The different values, ascending.
-    pub values: Vec<f64>,
+/// Computes demands on one record. Sub-formulas are evaluated once for each
+/// combination of the axes that they read, however many grid points there are.
+#[derive(Debug)]
+pub struct Evaluation<'a> {
+    plan: &'a Plan,
+    record: Record<'a>,
+    /// The different values of the signal that the height limits, ascending.
+    values: &'a [f64],
+    fills: Vec<Fill>,
+    /// The position on each axis.
+    position: Vec<usize>,
+    known: Vec<Vec<Option<Rc<Vec<u32>>>>>,
 }
 
-impl Ranks {
-    /// The rank of a sample, which must be one of the values.
-    fn rank(&self, sample: f64) -> u32 {
-        self.values.partition_point(|value| *value < sample) as u32
-    }
-}
-
-/// Everything a boundary needs beside the formula.
-#[derive(Debug, Clone, Copy)]
-pub struct Problem<'a> {
-    /// The record.
-    pub record: Record<'a>,
-    /// What each slot stands for.
-    pub fills: &'a [Fill],
-    /// For a threshold height: the ranks of its signal.
-    pub ranks: &'a Ranks,
-}
-
-/// The demand at the first sample.
-pub fn demand(formula: &Resolved, problem: Problem<'_>) -> u32 {
-    problem.demands(formula)[0]
-}
-
-impl Problem<'_> {
-    fn length(&self) -> usize {
-        self.record.length()
+impl<'a> Evaluation<'a> {
+    /// An evaluation of a plan on a record.
+    pub fn new(plan: &'a Plan, record: Record<'a>, values: &'a [f64]) -> Self {
+        Evaluation {
+            plan,
+            record,
+            values,
+            fills: plan.fills(),
+            position: vec![0; plan.axes.len()],
+            known: plan
+                .nodes
+                .iter()
+                .map(|node| vec![None; plan.combinations(node)])
+                .collect(),
+        }
     }
 
-    fn fill(&self, slot: SlotId) -> Fill {
-        self.fills[slot.index()]
+    /// The demand at the first sample for every grid point, the last axis
+    /// fastest.
+    pub fn demands_of_grid(&mut self) -> Vec<u32> {
+        let cells: usize = self.plan.axes.iter().map(|axis| axis.fills.len()).product();
+        (0..cells)
+            .map(|cell| {
+                self.go_to(cell);
+                self.at_start(self.plan.root)
+            })
+            .collect()
+    }
+
+    fn go_to(&mut self, cell: usize) {
+        let mut rest = cell;
+        for (at, axis) in self.plan.axes.iter().enumerate().rev() {
+            self.position[at] = rest % axis.fills.len();
+            rest /= axis.fills.len();
+            self.fills[axis.slot.index()] = axis.fills[self.position[at]];
+        }
+    }
+
+    /// The demand at the first sample: outermost operators are asked for
+    /// nothing else.
+    fn at_start(&mut self, node: usize) -> u32 {
+        let plan = self.plan;
+        match &plan.nodes[node].op {
+            Op::And(parts) => parts
+                .iter()
+                .map(|part| self.at_start(*part))
+                .max()
+                .unwrap_or(0),
+            Op::Or(parts) => parts
+                .iter()
+                .map(|part| self.at_start(*part))
+                .min()
+                .unwrap_or(NEVER),
+            Op::Throughout(span, operand) if self.free(span).is_none() => {
+                let demands = self.demands(*operand);
+                fold_at(
+                    &demands,
+                    0,
+                    self.window(span),
+                    self.beyond(*operand),
+                    u32::max,
+                )
+            }
+            Op::Sometime(span, operand) if self.free(span).is_none() => {
+                let demands = self.demands(*operand);
+                fold_at(
+                    &demands,
+                    0,
+                    self.window(span),
+                    self.beyond(*operand),
+                    u32::min,
+                )
+            }
+            _ => self.demands(node)[0],
+        }
     }
 
     /// The demand at every instant.
-    fn demands(&self, formula: &Resolved) -> Vec<u32> {
-        match &formula.shape {
-            Shape::Compare { signal, .. } | Shape::Flag { signal, .. } => {
-                self.atom(formula, *signal)
+    fn demands(&mut self, node: usize) -> Rc<Vec<u32>> {
+        let key = self.plan.key(node, &self.position);
+        if let Some(known) = &self.known[node][key] {
+            return Rc::clone(known);
+        }
+        let demands = Rc::new(self.compute(node));
+        self.known[node][key] = Some(Rc::clone(&demands));
+        demands
+    }
+
+    fn compute(&mut self, node: usize) -> Vec<u32> {
+        let plan = self.plan;
+        match &plan.nodes[node].op {
+            Op::Compare {
+                signal,
+                comparison,
+                limit,
+            } => self.compare(node, *signal, *comparison, *limit),
+            Op::Flag { signal, negated } => {
+                self.atom(node, *signal, |sample| boolean((sample > 0.5) != *negated))
             }
-            Shape::And(operands) => self.fold(operands, u32::max),
-            Shape::Or(operands) => self.fold(operands, u32::min),
-            Shape::Throughout(span, operand) => {
-                let demands = self.demands(operand);
+            Op::And(parts) => self.fold(parts, u32::max),
+            Op::Or(parts) => self.fold(parts, u32::min),
+            Op::Throughout(span, operand) => {
+                let demands = self.demands(*operand);
                 match self.free(span) {
-                    None => sliding_max(&demands, self.window(span), beyond(operand)),
-                    Some(Free::Upper(lower)) => self.longest_run(&demands, lower, operand.reading),
-                    Some(Free::Lower) => self.last_violation(&demands),
-                }
-            }
-            Shape::Sometime(span, operand) => {
-                let demands = self.demands(operand);
-                match self.free(span) {
-                    None => sliding_min(&demands, self.window(span), beyond(operand)),
-                    Some(Free::Upper(lower)) => self.first_time(&demands, lower, operand.reading),
-                    Some(Free::Lower) => self.last_time(&demands),
-                }
-            }
-            Shape::Until(span, left, right) => {
-                let (before, then) = (self.demands(left), self.demands(right));
-                match self.free(span) {
-                    None => self.until(&before, &then, span, [left.reading, right.reading]),
+                    None => sliding_max(&demands, self.window(span), self.beyond(*operand)),
                     Some(Free::Upper(lower)) => {
-                        self.first_answer(&before, &then, lower, right.reading)
+                        runs::longest_run(&demands, lower, self.reading(*operand))
                     }
-                    Some(Free::Lower) => self.last_answer(&before, &then),
+                    Some(Free::Lower) => runs::last_violation(&demands),
+                }
+            }
+            Op::Sometime(span, operand) => {
+                let demands = self.demands(*operand);
+                match self.free(span) {
+                    None => sliding_min(&demands, self.window(span), self.beyond(*operand)),
+                    Some(Free::Upper(lower)) => {
+                        runs::first_time(&demands, lower, self.reading(*operand))
+                    }
+                    Some(Free::Lower) => runs::last_time(&demands),
+                }
+            }
+            Op::Until(span, left, right) => {
+                let (before, then) = (self.demands(*left), self.demands(*right));
+                match self.free(span) {
+                    None => super::until::until(
+                        &before,
+                        &then,
+                        self.window(span),
+                        [self.beyond(*left), self.beyond(*right)],
+                    ),
+                    Some(Free::Upper(lower)) => {
+                        runs::first_answer(&before, &then, lower, self.reading(*right))
+                    }
+                    Some(Free::Lower) => runs::last_answer(&before, &then),
                 }
             }
         }
     }
 
-    fn fold(&self, operands: &[Resolved], join: impl Fn(u32, u32) -> u32) -> Vec<u32> {
-        let mut all = operands.iter().map(|operand| self.demands(operand));
-        let mut result = all.next().unwrap_or_default();
-        for other in all {
-            for (left, right) in result.iter_mut().zip(&other) {
+    fn fold(&mut self, parts: &[usize], join: impl Fn(u32, u32) -> u32) -> Vec<u32> {
+        let mut result = self.demands(parts[0]).to_vec();
+        for part in &parts[1..] {
+            for (left, right) in result.iter_mut().zip(self.demands(*part).iter()) {
                 *left = join(*left, *right);
             }
         }
         result
     }
 
-    fn atom(&self, formula: &Resolved, signal: SignalId) -> Vec<u32> {
-        let unknown = beyond(formula);
-        let samples = self.record.samples(signal);
-        let judge = |sample: f64| match &formula.shape {
-            Shape::Flag { negated, .. } => boolean((sample > 0.5) != *negated),
-            Shape::Compare {
-                comparison, limit, ..
-            } => {
-                let limit = match limit {
-                    Limit::Number(limit) => *limit,
-                    Limit::Slot(slot) => match self.fill(*slot) {
-                        Fill::Threshold(limit) => limit,
-                        _ => return self.threshold_demand(sample, *comparison),
-                    },
-                };
-                boolean(comparison.holds(sample, limit))
-            }
-            _ => unknown,
-        };
+    fn atom(&self, node: usize, signal: SignalId, judge: impl Fn(f64) -> u32) -> Vec<u32> {
+        let unknown = self.beyond(node);
         let judge = |sample: &f64| {
             if sample.is_nan() {
                 unknown
@@ -141,32 +204,68 @@ impl Problem<'_> {
                 judge(*sample)
             }
         };
-        samples.iter().map(judge).collect()
+        self.record.samples(signal).iter().map(judge).collect()
     }
 
-    /// The demand of an atom whose threshold is the height. For a strict
+    fn compare(
+        &self,
+        node: usize,
+        signal: SignalId,
+        comparison: Comparison,
+        limit: Limit,
+    ) -> Vec<u32> {
+        let limit = match limit {
+            Limit::Number(limit) => limit,
+            Limit::Slot(slot) => match self.fills[slot.index()] {
+                Fill::Threshold(limit) => limit,
+                _ => return self.threshold_demands(node, signal, comparison),
+            },
+        };
+        self.atom(node, signal, |sample| {
+            boolean(comparison.holds(sample, limit))
+        })
+    }
+
+    /// The demands of an atom whose threshold is the height. For a strict
     /// comparison the boundary is that of its negation: the value that just
     /// does not do.
-    fn threshold_demand(&self, sample: f64, comparison: crate::template::Comparison) -> u32 {
-        use crate::template::Direction;
-        let rank = self.ranks.rank(sample);
-        match comparison.direction() {
-            Direction::LargerIsEasier => rank + 1,
-            Direction::LargerIsHarder => self.ranks.values.len() as u32 - rank,
-        }
+    fn threshold_demands(&self, node: usize, signal: SignalId, comparison: Comparison) -> Vec<u32> {
+        let unknown = self.beyond(node);
+        let count = self.values.len() as u32;
+        let easier = comparison.direction() == Direction::LargerIsEasier;
+        let demand = |(sample, rank): (&f64, &u32)| match (sample.is_nan(), easier) {
+            (true, _) => unknown,
+            (false, true) => rank + 1,
+            (false, false) => count - rank,
+        };
+        let ranks = self.record.ranks(signal);
+        self.record
+            .samples(signal)
+            .iter()
+            .zip(ranks)
+            .map(demand)
+            .collect()
+    }
+
+    fn reading(&self, node: usize) -> Reading {
+        self.plan.nodes[node].reading
+    }
+
+    /// What a formula demands beyond the record.
+    fn beyond(&self, node: usize) -> u32 {
+        boolean(self.reading(node) == Reading::Weak)
     }
 
     /// Which bound of a window is the height, if any.
     fn free(&self, span: &Span) -> Option<Free> {
+        let is_height = |slot: SlotId| self.fills[slot.index()] == Fill::Height;
         if let Step::Slot(slot) = span.lower
-            && self.fill(slot) == Fill::Height
+            && is_height(slot)
         {
             return Some(Free::Lower);
         }
         match span.upper {
-            Step::Slot(slot) if self.fill(slot) == Fill::Height => {
-                Some(Free::Upper(self.steps(span.lower)))
-            }
+            Step::Slot(slot) if is_height(slot) => Some(Free::Upper(self.steps(span.lower))),
             _ => None,
         }
     }
@@ -175,7 +274,7 @@ impl Problem<'_> {
         match step {
             Step::At(steps) => steps as usize,
             Step::End => usize::MAX,
-            Step::Slot(slot) => match self.fill(slot) {
+            Step::Slot(slot) => match self.fills[slot.index()] {
                 Fill::Steps(steps) => steps as usize,
                 other => panic!("a bound is filled with {other:?}"),
             },
@@ -185,124 +284,6 @@ impl Problem<'_> {
     fn window(&self, span: &Span) -> (usize, usize) {
         (self.steps(span.lower), self.steps(span.upper))
     }
-
-    /// `sometime [lower, ?]`: steps to the first instant that satisfies.
-    fn first_time(&self, demands: &[u32], lower: usize, reading: Reading) -> Vec<u32> {
-        let next = next_where(demands, |demand| demand == 0);
-        self.each(|at| {
-            let found = at_or_end(&next, at + lower);
-            match (found < self.length(), reading) {
-                (true, _) => steps_demand(found - at),
-                (false, Reading::Weak) => steps_demand((at + lower).max(self.length()) - at),
-                (false, Reading::Strong) => NEVER,
-            }
-        })
-    }
-
-    /// `throughout [?, end]`: steps to just after the last violation.
-    fn last_violation(&self, demands: &[u32]) -> Vec<u32> {
-        let last = demands.iter().rposition(|demand| *demand != 0);
-        self.each(|at| steps_demand(last.map_or(0, |last| (last + 1).saturating_sub(at))))
-    }
-
-    /// `throughout [lower, ?]`: the longest time that it keeps holding, which
-    /// is easier the shorter it is.
-    fn longest_run(&self, demands: &[u32], lower: usize, reading: Reading) -> Vec<u32> {
-        let next = next_where(demands, |demand| demand != 0);
-        self.each(|at| {
-            let violated = at_or_end(&next, at + lower);
-            let violated = match (violated < self.length(), reading) {
-                (true, _) => violated,
-                (false, Reading::Weak) => return 0,
-                (false, Reading::Strong) => self.length(),
-            };
-            if violated <= at + lower {
-                NEVER
-            } else {
-                self.longest(violated - 1 - at)
-            }
-        })
-    }
-
-    /// `sometime [?, end]`: how late it still comes.
-    fn last_time(&self, demands: &[u32]) -> Vec<u32> {
-        let last = demands.iter().rposition(|demand| *demand == 0);
-        self.each(|at| match last {
-            Some(last) if last >= at => self.longest(last - at),
-            _ => NEVER,
-        })
-    }
-
-    /// `until [lower, ?]`: steps to the first instant of the right side that
-    /// the left side reaches.
-    fn first_answer(
-        &self,
-        before: &[u32],
-        then: &[u32],
-        lower: usize,
-        reading: Reading,
-    ) -> Vec<u32> {
-        let broken = next_where(before, |demand| demand != 0);
-        let next = next_where(then, |demand| demand == 0);
-        self.each(|at| {
-            let mut found = at_or_end(&next, at + lower);
-            if found >= self.length() {
-                if reading == Reading::Strong {
-                    return NEVER;
-                }
-                found = (at + lower).max(self.length());
-            }
-            if at_or_end(&broken, at) < found.min(self.length()) {
-                NEVER
-            } else {
-                steps_demand(found - at)
-            }
-        })
-    }
-
-    /// `until [?, end]`: the last instant of the right side that the left side
-    /// reaches.
-    fn last_answer(&self, before: &[u32], then: &[u32]) -> Vec<u32> {
-        let broken = next_where(before, |demand| demand != 0);
-        self.each(|at| {
-            let reach = at_or_end(&broken, at).min(self.length() - 1);
-            match then[at..=reach].iter().rposition(|demand| *demand == 0) {
-                Some(steps) => self.longest(steps),
-                None => NEVER,
-            }
-        })
-    }
-
-    fn until(&self, before: &[u32], then: &[u32], span: &Span, readings: [Reading; 2]) -> Vec<u32> {
-        let (lower, upper) = self.window(span);
-        let [left_beyond, right_beyond] = readings.map(of_reading);
-        self.each(|at| {
-            let end = self.length();
-            let (first, last) = (at.saturating_add(lower), at.saturating_add(upper).min(end));
-            let mut kept = 0;
-            let mut best = NEVER;
-            for t in at..=last {
-                if t >= first {
-                    let answer = if t < end { then[t] } else { right_beyond };
-                    best = best.min(answer.max(kept));
-                }
-                kept = kept.max(if t < end { before[t] } else { left_beyond });
-            }
-            if first > end {
-                best = right_beyond.max(kept);
-            }
-            best
-        })
-    }
-
-    fn each(&self, demand: impl Fn(usize) -> u32) -> Vec<u32> {
-        (0..self.length()).map(demand).collect()
-    }
-
-    /// The demand of "at most `steps`", counted from the hard end.
-    fn longest(&self, steps: usize) -> u32 {
-        (self.length() - steps.min(self.length() - 1)) as u32
-    }
 }
 
 /// Which bound is the height; for the upper one, the lower bound.
@@ -311,38 +292,7 @@ enum Free {
     Upper(usize),
 }
 
-fn boolean(holds: bool) -> u32 {
+/// The demand of something that holds or does not.
+pub(super) fn boolean(holds: bool) -> u32 {
     if holds { 0 } else { NEVER }
-}
-
-fn of_reading(reading: Reading) -> u32 {
-    boolean(reading == Reading::Weak)
-}
-
-/// What a formula demands beyond the record.
-fn beyond(formula: &Resolved) -> u32 {
-    of_reading(formula.reading)
-}
-
-/// The demand of "at least so many steps": 0 is kept for "every value".
-fn steps_demand(steps: usize) -> u32 {
-    u32::try_from(steps).map_or(NEVER, |steps| steps.saturating_add(1))
-}
-
-/// For each instant the next one (itself included) whose demand passes; the
-/// length where there is none.
-fn next_where(demands: &[u32], pass: impl Fn(u32) -> bool) -> Vec<usize> {
-    let mut next = vec![demands.len(); demands.len()];
-    let mut found = demands.len();
-    for at in (0..demands.len()).rev() {
-        if pass(demands[at]) {
-            found = at;
-        }
-        next[at] = found;
-    }
-    next
-}
-
-fn at_or_end(next: &[usize], at: usize) -> usize {
-    next.get(at).copied().unwrap_or(next.len())
 }

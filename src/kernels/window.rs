@@ -16,6 +16,28 @@ pub fn sliding_min(values: &[u32], window: (usize, usize), beyond: u32) -> Vec<u
     sliding(values, window, beyond, u32::min)
 }
 
+/// The extreme over the window of one instant.
+pub(super) fn fold_at(
+    values: &[u32],
+    at: usize,
+    (lower, upper): (usize, usize),
+    beyond: u32,
+    pick: impl Fn(u32, u32) -> u32,
+) -> u32 {
+    let length = values.len();
+    let first = at.saturating_add(lower).min(length);
+    let last = at.saturating_add(upper);
+    let inside = &values[first..last.saturating_add(1).min(length).max(first)];
+    let reaches_beyond = last >= length;
+    let start = reaches_beyond.then_some(beyond);
+    let folded = inside.iter().copied().reduce(&pick);
+    match (folded, start) {
+        (Some(a), Some(b)) => pick(a, b),
+        (Some(one), None) | (None, Some(one)) => one,
+        (None, None) => beyond,
+    }
+}
+
 fn sliding(
     values: &[u32],
     (lower, upper): (usize, usize),

@@ -7,6 +7,7 @@
 
 use crate::embedding::Embedding;
 use crate::grouping::Points;
+use crate::template::SlotKind;
 
 /// Most columns that distances are taken of; more are thinned out evenly.
 const MOST_COLUMNS: usize = 16;
@@ -21,13 +22,32 @@ pub enum Scaling {
     SignedLog,
 }
 
-/// The columns of an embedding that say something (more than one value), with
-/// infinite heights put beyond the finite ones by a tenth of their range.
+/// Most `never` and `always` in a column of thresholds that is used. Where a
+/// level is never or always kept, the window mostly left the record or the
+/// event never came, and the column measures that instead of the level.
+const MOST_INFINITE_LEVELS: f64 = 0.1;
+/// The same for a column of times, where `never` is often the answer.
+const MOST_INFINITE_TIMES: f64 = 0.5;
+
+/// Whether a column of an embedding is fit to judge and describe by: few
+/// heights are `never` or `always`.
+pub fn is_usable(embedding: &Embedding, column: usize) -> bool {
+    let most = match embedding.formula.slot(embedding.height).kind {
+        SlotKind::Threshold(_) => MOST_INFINITE_LEVELS,
+        SlotKind::Time => MOST_INFINITE_TIMES,
+    };
+    let heights = &embedding.columns[column];
+    let infinite = heights.iter().filter(|height| height.is_infinite()).count();
+    infinite as f64 <= most * heights.len() as f64
+}
+
+/// The usable columns of an embedding that say something (more than one
+/// value), with infinite heights put beyond the finite ones by a tenth of their
+/// range.
 pub fn capped(embedding: &Embedding) -> Vec<Vec<f64>> {
-    embedding
-        .columns
-        .iter()
-        .filter_map(|column| cap(column))
+    (0..embedding.columns.len())
+        .filter(|column| is_usable(embedding, *column))
+        .filter_map(|column| cap(&embedding.columns[column]))
         .collect()
 }
 

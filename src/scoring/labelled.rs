@@ -1,7 +1,8 @@
 //! How well a template tells given labels apart.
 //!
 //! score = cross-validated accuracy of a short tree + accuracy of the nearest
-//! neighbour (each trace left out in turn) + 0.2 times the label silhouette.
+//! neighbour (each trace left out in turn) + 0.2 times the label silhouette - 0.005
+//! times the size.
 //! The first says that a short description exists, the second that the
 //! embedding as a whole keeps the labels apart, the third tells apart the many
 //! templates that do both perfectly.
@@ -19,6 +20,9 @@ use crate::traces::Labels;
 const REPEATS: usize = 3;
 /// Most columns that trees look at; more are thinned out evenly.
 const TREE_COLUMNS: usize = 32;
+
+/// What a template pays for each unit of its size.
+const SIZE_PRICE: f64 = 0.005;
 
 /// A template judged by labels.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize, Deserialize)]
@@ -60,7 +64,8 @@ pub fn score(embedding: &Embedding, labels: &Labels, seed: u64) -> LabelledScore
     let neighbour = neighbour_accuracy(&distances, &labels.of_trace);
     let silhouette = label_silhouette(&distances, labels);
     LabelledScore {
-        score: accuracy + neighbour + 0.2 * silhouette,
+        score: accuracy + neighbour + 0.2 * silhouette
+            - SIZE_PRICE * f64::from(embedding.formula.size()),
         accuracy,
         neighbour,
         silhouette,

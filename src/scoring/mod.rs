@@ -19,7 +19,7 @@ pub use chance::{
     LabelChance, SurrogateChance, Verdict, adjusted_by_maximum, label_chance, permutation_p_value,
     surrogate_chance,
 };
-pub use columns::{Scaling, capped, has_enough_finite, scaled, spearman};
+pub use columns::{Scaling, capped, has_enough_finite, is_usable, scaled, spearman};
 pub use interval::wilson;
 pub use labelled::{LabelledScore, label_silhouette, score};
 pub use tree::{cross_validated_accuracy, max_literals};

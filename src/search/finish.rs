@@ -1,6 +1,9 @@
 //! The end of a search: rank, gather families, describe, test against chance.
 
+use rayon::prelude::*;
+
 use super::describe::{Described, GroupNames, Units, describe, height_text, rule_verdicts};
+
 use super::driver::{Harvest, Kept};
 use super::family::{Family, families};
 use super::outcome::{EXPLANATION_SCHEMA, Explanation, FamilyMember, HeldOut, Ranked, RankedBrief};
@@ -96,15 +99,21 @@ fn labelled(
         held_out: None,
     };
     let mut panel: Vec<(Described, &Embedding)> = Vec::new();
-    for (rank, founder) in founders.iter().enumerate() {
-        let described = describe(
-            &founder.embedding,
-            &founder.partition,
-            &founder.odd,
-            names,
-            traces,
-            held_out,
-        );
+    let described: Vec<Described> = founders
+        .par_iter()
+        .map(|founder| {
+            let embedding = &founder.embedding;
+            describe(
+                embedding,
+                &founder.partition,
+                &founder.odd,
+                names,
+                traces,
+                held_out,
+            )
+        })
+        .collect();
+    for (rank, (founder, described)) in founders.iter().zip(described).enumerate() {
         let p_value = chance.p_values.get(rank).copied();
         let entry = ranked(rank, founder, harvest, traces, p_value);
         let evidence = labelled_evidence(&harvest.kept[founder.kept], &chance, rank);
@@ -143,13 +152,12 @@ fn labelled_founders(
     traces: &TraceSet,
     labels: &Labels,
 ) -> Vec<Founder> {
-    let first: Vec<(usize, Embedding)> = order
-        .iter()
-        .take(RANKED)
+    let first: Vec<(usize, Embedding)> = order[..order.len().min(RANKED)]
+        .par_iter()
         .filter_map(|kept| Some((*kept, embed(&harvest.kept[*kept].formula, traces).ok()?)))
         .collect();
     let views: Vec<Option<Witness>> = first
-        .iter()
+        .par_iter()
         .map(|(kept, embedding)| Witness::new(*kept, &capped(embedding)))
         .collect();
     let alike = |a: usize, b: usize| match (&views[a], &views[b]) {
@@ -211,6 +219,7 @@ fn chance_of(
         .collect();
     let count = others.len().min(300 - SHOWN);
     let sample: Vec<Embedding> = (0..count)
+        .into_par_iter()
         .map(|k| others[k * others.len() / count])
         .filter_map(|kept| embed(&harvest.kept[kept].formula, traces).ok())
         .collect();
@@ -427,6 +436,7 @@ fn evenly(harvest: &Harvest, traces: &TraceSet, most: usize) -> Vec<Embedding> {
     let all = harvest.kept.len();
     let count = all.min(most);
     (0..count)
+        .into_par_iter()
         .filter_map(|k| embed(&harvest.kept[k * all / count].formula, traces).ok())
         .filter(|embedding| crate::scoring::has_enough_finite(embedding, 0.1))
         .collect()

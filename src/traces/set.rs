@@ -1,6 +1,6 @@
 //! The trace set: names, labels, grid and samples.
 
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 use crate::support::{SignalId, TraceId};
 use crate::template::{Duration, Signal, TimeUnit};
@@ -84,6 +84,12 @@ pub struct TraceSet {
     labels: Option<Labels>,
     grid: Grid,
     channels: Vec<Channel>,
+    /// For each signal its known samples in ascending order, once asked for.
+    sorted: Vec<OnceLock<Vec<f64>>>,
+    /// For each signal its different values in ascending order, likewise.
+    distinct: Vec<OnceLock<Vec<f64>>>,
+    /// For each signal the rank of each sample among its different values.
+    ranks: Vec<OnceLock<Vec<u32>>>,
 }
 
 /// One trace's samples, by signal.
@@ -102,6 +108,11 @@ impl<'a> Record<'a> {
     /// The samples of a signal.
     pub fn samples(&self, signal: SignalId) -> &'a [f64] {
         self.set.samples(signal, self.trace)
+    }
+
+    /// The ranks of a signal's samples, as in [`TraceSet::ranks`].
+    pub fn ranks(&self, signal: SignalId) -> &'a [u32] {
+        self.set.ranks(signal, self.trace)
     }
 }
 
@@ -137,6 +148,9 @@ impl TraceSet {
             starts,
             labels,
             grid,
+            sorted: vec![OnceLock::new(); channels.len()],
+            distinct: vec![OnceLock::new(); channels.len()],
+            ranks: vec![OnceLock::new(); channels.len()],
             channels,
         }
     }
@@ -223,6 +237,9 @@ impl TraceSet {
     pub fn add_channel(&mut self, channel: Channel) -> SignalId {
         assert_eq!(channel.samples.len(), self.starts[self.names.len()]);
         self.channels.push(channel);
+        self.sorted.push(OnceLock::new());
+        self.distinct.push(OnceLock::new());
+        self.ranks.push(OnceLock::new());
         SignalId::at(self.channels.len() - 1)
     }
 
@@ -230,6 +247,41 @@ impl TraceSet {
     pub fn samples(&self, signal: SignalId, trace: TraceId) -> &[f64] {
         let range = self.starts[trace.index()]..self.starts[trace.index() + 1];
         &self.channels[signal.index()].samples[range]
+    }
+
+    /// The known samples of a signal over all traces, in ascending order.
+    pub fn sorted_samples(&self, signal: SignalId) -> &[f64] {
+        self.sorted[signal.index()].get_or_init(|| {
+            let mut samples = self.channels[signal.index()].samples.clone();
+            samples.retain(|sample| !sample.is_nan());
+            samples.sort_unstable_by(f64::total_cmp);
+            samples
+        })
+    }
+
+    /// The different known values of a signal over all traces, in ascending
+    /// order.
+    pub fn distinct_values(&self, signal: SignalId) -> &[f64] {
+        self.distinct[signal.index()].get_or_init(|| {
+            let mut values = self.sorted_samples(signal).to_vec();
+            values.dedup();
+            values
+        })
+    }
+
+    /// The rank of every sample of a signal on one trace among the signal's
+    /// different values, from 0; meaningless where a sample is not known.
+    pub fn ranks(&self, signal: SignalId, trace: TraceId) -> &[u32] {
+        let ranks = self.ranks[signal.index()].get_or_init(|| {
+            let values = self.distinct_values(signal);
+            let rank = |sample: &f64| values.partition_point(|value| value < sample) as u32;
+            self.channels[signal.index()]
+                .samples
+                .iter()
+                .map(rank)
+                .collect()
+        });
+        &ranks[self.starts[trace.index()]..self.starts[trace.index() + 1]]
     }
 
     /// One trace's samples by signal.
