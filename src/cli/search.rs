@@ -41,7 +41,7 @@ pub(super) struct Arguments {
     #[arg(long, value_name = "N", default_value_t = 1)]
     pub(super) seed: u64,
     /// Stop after so many scored templates
-    #[arg(long, value_name = "N", default_value_t = 20_000)]
+    #[arg(long, value_name = "N", default_value_t = 2_000)]
     pub(super) templates: usize,
     /// Largest templates to list
     #[arg(long, value_name = "N")]

@@ -1,46 +1,34 @@
-//! Temporary: plain memory of what was seen.
+//! Never the same template twice.
+//!
+//! Two templates are the same when, whatever the data, the specifications that
+//! come from filling their slots are the same set of statements (their
+//! **family**). A formula says something in the weak reading, in the strong
+//! one, and when it stands outermost; parts of larger templates must agree in
+//! all three.
+//!
+//! * `language` is the e-graph's language: sorted n-ary `and` and `or`, windows
+//!   as payload, atoms by number.
+//! * `flags` is class data: what kind of family a class is, and how the end of
+//!   a record reads it. Facts about the meaning, so merging classes joins them.
+//! * `rules` is the table of equalities: name, sides, condition, reason.
+//! * `normalise` applies them at the top of a formula whose parts are canonical.
+//! * `seen` is the memory of a search: candidates are built from canonical
+//!   parts, each is added beside its normal form, the two are united, and the
+//!   e-graph is rebuilt once a layer.
+//! * `brute` is the judge: families worked out value by value on short traces.
+//!   A rule that has not passed it does not go in.
+//!
+//! A template and its negation have the same boundary, so of the two only one
+//! is kept; that is decided for whole templates, never in the e-graph.
 
-use std::collections::BTreeSet;
+pub mod brute;
+mod flags;
+mod language;
+mod normalise;
+mod rules;
+mod seen;
 
-use crate::template::Formula;
-
-/// What a template is, compared with those before it.
-#[derive(Debug, Clone, PartialEq)]
-pub enum Outcome {
-    /// New, in this form.
-    New(Formula),
-    /// Seen before.
-    Duplicate,
-    /// Constant whatever the data.
-    Constant,
-}
-
-/// Memory of what was seen.
-#[derive(Debug, Default)]
-pub struct Seen {
-    parts: BTreeSet<(u64, usize, Formula)>,
-    templates: BTreeSet<Formula>,
-}
-
-impl Seen {
-    /// An empty memory.
-    pub fn new() -> Self {
-        Seen::default()
-    }
-    /// A part.
-    pub fn part(&mut self, scope: u64, rule: usize, formula: &Formula) -> Option<Formula> {
-        self.parts
-            .insert((scope, rule, formula.clone()))
-            .then(|| formula.clone())
-    }
-    /// A template.
-    pub fn template(&mut self, formula: &Formula) -> Outcome {
-        if self.templates.insert(formula.clone()) {
-            Outcome::New(formula.clone())
-        } else {
-            Outcome::Duplicate
-        }
-    }
-    /// End of a layer.
-    pub fn finish_layer(&mut self) {}
-}
+pub use flags::Flags;
+pub use language::{Symbol, WindowKey};
+pub use rules::{RULES, RuleText};
+pub use seen::{Outcome, Seen};

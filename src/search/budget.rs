@@ -10,7 +10,7 @@ use serde::{Deserialize, Serialize};
 /// When a search stops.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub struct Limits {
-    /// After so many scored templates. Default: 20,000.
+    /// After so many scored templates. Default: 2,000.
     pub templates: usize,
     /// After the templates of this size. Default: what the grammars say.
     pub size: Option<u32>,
@@ -22,7 +22,7 @@ pub struct Limits {
 impl Default for Limits {
     fn default() -> Self {
         Limits {
-            templates: 20_000,
+            templates: 2_000,
             size: None,
             time: None,
         }
