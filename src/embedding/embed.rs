@@ -14,6 +14,9 @@ use crate::traces::TraceSet;
 
 /// Points of an axis when nothing else is said.
 pub const DEFAULT_POINTS: usize = 16;
+/// Points of each of several axes in a search: scoring thins a larger grid out
+/// again, so its points would be computed for nothing.
+const POINTS_OF_SEVERAL: usize = 8;
 
 /// Why a template has no embedding on a trace set.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
@@ -82,7 +85,11 @@ pub fn axes(
 /// When the template has no slot or does not fit the data.
 pub fn embed(formula: &Formula, traces: &TraceSet) -> Result<Embedding, EmbedError> {
     let height = default_height(formula).ok_or_else(|| EmbedError::NoSlot(formula.clone()))?;
-    let axes = axes(formula, traces, height, DEFAULT_POINTS)?;
+    let points = match formula.slots().len() {
+        0..=2 => DEFAULT_POINTS,
+        _ => POINTS_OF_SEVERAL,
+    };
+    let axes = axes(formula, traces, height, points)?;
     embed_with(formula, traces, height, axes)
 }
 
