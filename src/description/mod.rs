@@ -13,11 +13,13 @@ mod number;
 mod panel;
 mod representatives;
 mod rule;
+mod trial;
 mod verify;
 
 pub use literal::{Literal, LiteralSearch};
 pub use number::{nice_number, nice_steps};
 pub use panel::{Ballot, ballot, elect};
 pub use representatives::{Representatives, representatives};
-pub use rule::{Quality, Rule, rule, rule_text};
+pub use rule::{Quality, Rule, rule, rule_among, rule_text};
+pub use trial::rules_on_trial;
 pub use verify::{Check, verify};

@@ -90,10 +90,19 @@ impl Rule {
 /// second and a third where that is worth it. `None` when no column has two
 /// different heights.
 pub fn rule(search: &LiteralSearch<'_>, members: &[bool]) -> Option<Rule> {
-    let everything = vec![true; members.len()];
+    rule_among(search, members, &vec![true; members.len()])
+}
+
+/// As [`rule`], looking at some of the traces only. `members` must be among
+/// them.
+pub fn rule_among(
+    search: &LiteralSearch<'_>,
+    members: &[bool],
+    considered: &[bool],
+) -> Option<Rule> {
     let mut best: Option<(f64, f64, Vec<Cut>)> = None;
-    for first in search.cuts(members, &everything).into_iter().take(BEAM) {
-        let (quality, cuts) = narrowed(search, members, first);
+    for first in search.cuts(members, considered).into_iter().take(BEAM) {
+        let (quality, cuts) = narrowed(search, members, considered, first);
         // Fewer literals and better placed ones go first among equals.
         let value = first.value - 0.02 * (cuts.len() - 1) as f64;
         let better = best.as_ref().is_none_or(|(best_quality, best_value, _)| {
@@ -110,10 +119,15 @@ pub fn rule(search: &LiteralSearch<'_>, members: &[bool]) -> Option<Rule> {
 
 /// A first cut with more cuts among the traces that it leaves, while they add
 /// enough.
-fn narrowed(search: &LiteralSearch<'_>, members: &[bool], first: Cut) -> (f64, Vec<Cut>) {
+fn narrowed(
+    search: &LiteralSearch<'_>,
+    members: &[bool],
+    considered: &[bool],
+    first: Cut,
+) -> (f64, Vec<Cut>) {
     let mut quality = first.quality;
     let mut cuts = vec![first];
-    let mut left: Vec<bool> = vec![true; members.len()];
+    let mut left: Vec<bool> = considered.to_vec();
     for needed in [SECOND, THIRD] {
         let last = search.literal(&cuts[cuts.len() - 1]);
         for (trace, left) in left.iter_mut().enumerate() {

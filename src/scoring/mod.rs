@@ -22,6 +22,6 @@ pub use chance::{
 pub use columns::{Scaling, capped, has_enough_finite, is_usable, scaled, spearman};
 pub use interval::wilson;
 pub use labelled::{LabelledScore, label_silhouette, score};
-pub use tree::{cross_validated_accuracy, max_literals};
+pub use tree::{cross_validated_accuracy, max_literals, stratified_folds};
 pub use unlabelled::{Candidate, Consensus, Grouping, Guards};
 pub use witness::Witness;

@@ -39,7 +39,7 @@ pub fn cross_validated_accuracy(
     };
     let mut right = 0;
     for _ in 0..repeats {
-        let fold = folds(label, labels, stream);
+        let fold = stratified_folds(label, labels, FOLDS, stream);
         for held in 0..FOLDS {
             let training: Vec<bool> = fold.iter().map(|fold| *fold != held).collect();
             let tree = grower.grow(&training);
@@ -52,14 +52,19 @@ pub fn cross_validated_accuracy(
 }
 
 /// A fold for each trace; every label is spread evenly over the folds.
-fn folds(label: &[usize], labels: usize, stream: &mut Stream) -> Vec<usize> {
+pub fn stratified_folds(
+    label: &[usize],
+    labels: usize,
+    folds: usize,
+    stream: &mut Stream,
+) -> Vec<usize> {
     let mut fold = vec![0; label.len()];
     let mut next = 0;
     for wanted in 0..labels {
         let mut members: Vec<usize> = (0..label.len()).filter(|i| label[*i] == wanted).collect();
         stream.shuffle(&mut members);
         for trace in members {
-            fold[trace] = next % FOLDS;
+            fold[trace] = next % folds;
             next += 1;
         }
     }
