@@ -310,6 +310,12 @@ fn nested(outer: Window, inner: Window) -> Option<(&'static str, Window)> {
         (Bound::Slot, Bound::End, Bound::Slot, Bound::End) => {
             Some(("nest-slots", merged(a, Bound::End)?))
         }
+        // Two looks ahead of any length are one look ahead of any length.
+        (Bound::After(a), Bound::Slot, Bound::After(c), Bound::Slot)
+            if a.is_zero() && c.is_zero() =>
+        {
+            Some(("nest-slots", merged(Bound::After(a), Bound::Slot)?))
+        }
         (_, Bound::End, Bound::After(low), Bound::Slot) if low.is_zero() => {
             Some(("nest-slots", merged(a, Bound::End)?))
         }

@@ -51,7 +51,7 @@ pub const RULES: &[RuleText] = &[
     RuleText {
         name: "nest-slots",
         sides: "G[?,end] G[?,end] f = G[?,end] f; G[a,end] G[0,?] f = G[a,end] f; \
-                G[0,end] G[?,end] f = G[?,end] f",
+                G[0,end] G[?,end] f = G[?,end] f; G[0,?] G[0,?] f = G[0,?] f",
         condition: "always",
         reason: "every instant is asked anyway",
     },
