@@ -120,7 +120,8 @@ fn function_lengths(lines: &[&str]) -> Vec<(usize, usize)> {
     for (start, line) in lines.iter().enumerate() {
         let code = line.trim_start();
         let words: Vec<&str> = code.split_whitespace().take(5).collect();
-        let is_function = words.contains(&"fn") && !code.starts_with("//");
+        let has_body = !code.trim_end().ends_with(';');
+        let is_function = words.contains(&"fn") && !code.starts_with("//") && has_body;
         if !is_function {
             continue;
         }

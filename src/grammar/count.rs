@@ -10,7 +10,8 @@ use std::collections::BTreeMap;
 
 use super::file::{Grammar, Limits};
 use super::palette::Palette;
-use super::production::{Head, PieceId, ProductionError, Productions, productions};
+use super::piece::{Head, PieceId};
+use super::production::{ProductionError, Productions, productions};
 
 /// Numbers of templates by size; `of[n]` counts those of size n.
 #[derive(Debug, Clone, PartialEq, Eq)]

@@ -13,7 +13,8 @@ use std::rc::Rc;
 use super::count::is_same_twice;
 use super::file::{Grammar, Limits};
 use super::palette::Palette;
-use super::production::{Head, Piece, PieceId, ProductionError, Productions, Value, productions};
+use super::piece::{Head, Piece, PieceId, Value};
+use super::production::{ProductionError, Productions, productions};
 use crate::template::Formula;
 
 /// Decides which parts larger templates are built from.

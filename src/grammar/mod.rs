@@ -19,6 +19,7 @@ mod count;
 mod enumerate;
 mod file;
 mod palette;
+mod piece;
 mod production;
 mod report;
 
