@@ -13,6 +13,7 @@ mod equivalence;
 mod grammars;
 mod grouping;
 mod kernels;
+mod known_answers;
 mod language;
 mod measures;
 mod scoring;
