@@ -439,11 +439,15 @@ fn help_and_readme_show_commands_that_work() {
         );
     }
     let readme = fs::read_to_string(root().join("README.md")).unwrap();
-    for line in readme
-        .lines()
-        .filter_map(|line| line.trim().strip_prefix("strandline "))
-    {
-        let command = line.split_whitespace().next().unwrap();
+    let mut shown = 0;
+    let blocks = readme.split("```").skip(1).step_by(2);
+    for line in blocks.flat_map(str::lines) {
+        let Some(rest) = line.trim().strip_prefix("strandline ") else {
+            continue;
+        };
+        let command = rest.split_whitespace().next().unwrap();
         assert!(commands.contains(&command), "{line}");
+        shown += 1;
     }
+    assert!(shown >= 10, "{shown}");
 }

@@ -477,6 +477,11 @@ fn runs_gaps_and_answers() {
             ("(v <= 6) until [0, ?] L", 7.0),
         ],
     );
+}
+
+/// Answers that come too late, delayed copies, and chains.
+#[test]
+fn late_answers_and_chains() {
     for (d, expected) in [(3, NEVER), (4, NEVER), (5, 0.0), (6, 0.0)] {
         let text = format!("throughout [0, end] (rises(E) implies (v <= ?) until [0, {d}] L)");
         check(
@@ -521,6 +526,12 @@ fn runs_gaps_and_answers() {
             ),
         ],
     );
+}
+
+/// A command and its feedback, a pump that starts and stops, and a level that
+/// the end of the record cuts off.
+#[test]
+fn overlaps_and_open_ends() {
     check(
         &[("K", between(30, 10, 20)), ("F", between(30, 13, 24))],
         &[
