@@ -4,7 +4,9 @@
 use std::collections::BTreeSet;
 use std::ops::ControlFlow;
 
-use strandline::grammar::{Enumerator, Grammar, Identity, Palette, SHIPPED, count, report};
+use strandline::grammar::{
+    Enumerator, Grammar, Identity, Palette, Portion, SHIPPED, count, report,
+};
 use strandline::template::{Formula, parse};
 
 fn read(text: &str) -> Grammar {
@@ -260,6 +262,48 @@ fn purposeful_grammars_list_nothing_twice() {
             .collect();
         let distinct: BTreeSet<&Formula> = all.iter().collect();
         assert_eq!(distinct.len(), all.len(), "{name}");
+    }
+}
+
+fn list_in(grammar: &Grammar, palette: &Palette, size: u32, portion: Portion) -> Vec<Formula> {
+    let mut found = Vec::new();
+    let mut enumerator = Enumerator::new(grammar, palette).unwrap();
+    let _ = enumerator.for_each_in(size, portion, &mut Identity, |_, _, formula| {
+        found.push(formula);
+        ControlFlow::Continue(())
+    });
+    found
+}
+
+/// Slices together are the whole and share nothing; a listing that was cut
+/// short goes on exactly behind the place where it stopped.
+#[test]
+fn portions_make_up_the_whole() {
+    let palette = Palette::of(2, 1);
+    for name in ["open-start", "event-response"] {
+        let grammar = Grammar::open(name).unwrap();
+        for size in [4, 5, 6] {
+            let whole = list(&grammar, &palette, size);
+            for slices in [1, 3, 16] {
+                let parts: Vec<Vec<Formula>> = (0..slices)
+                    .map(|slice| {
+                        let slice = (slice, slices);
+                        list_in(&grammar, &palette, size, Portion { from: 0, slice })
+                    })
+                    .collect();
+                for (place, formula) in whole.iter().enumerate() {
+                    assert_eq!(&parts[place % slices][place / slices], formula);
+                }
+                assert_eq!(parts.iter().map(Vec::len).sum::<usize>(), whole.len());
+            }
+            for from in [0, 1.min(whole.len()), whole.len() / 2, whole.len()] {
+                let portion = Portion {
+                    from,
+                    ..Portion::WHOLE
+                };
+                assert_eq!(list_in(&grammar, &palette, size, portion), whole[from..]);
+            }
+        }
     }
 }
 

@@ -35,6 +35,29 @@ impl Canonical for Identity {
     }
 }
 
+/// Which templates of a size are handed over.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Portion {
+    /// Templates passed over first: where an earlier listing stopped.
+    pub from: usize,
+    /// Slice `.0` of `.1`, counted from 0: every template belongs to exactly
+    /// one slice.
+    pub slice: (usize, usize),
+}
+
+impl Portion {
+    /// All templates.
+    pub const WHOLE: Portion = Portion {
+        from: 0,
+        slice: (0, 1),
+    };
+
+    /// Whether the template at a place of its size belongs to it.
+    pub fn has(&self, place: usize) -> bool {
+        place >= self.from && place % self.slice.1 == self.slice.0
+    }
+}
+
 /// A value with what it counts against the limits.
 #[derive(Debug, Clone)]
 struct Entry {
@@ -99,6 +122,29 @@ impl Enumerator {
                 _ => ControlFlow::Continue(()),
             },
         )
+    }
+
+    /// As [`Enumerator::for_each`], for a portion of the size only. The place of
+    /// each template in its size is handed over too, so that a listing that is
+    /// cut short can go on behind it. Parts are always listed whole, so the
+    /// order does not depend on the portion.
+    pub fn for_each_in<C: Canonical>(
+        &mut self,
+        size: u32,
+        portion: Portion,
+        canonical: &mut C,
+        mut visit: impl FnMut(&mut C, usize, Formula) -> ControlFlow<()>,
+    ) -> ControlFlow<()> {
+        let mut next = 0;
+        self.for_each(size, canonical, |canonical, formula| {
+            let place = next;
+            next += 1;
+            if portion.has(place) {
+                visit(canonical, place, formula)
+            } else {
+                ControlFlow::Continue(())
+            }
+        })
     }
 
     /// Makes every value of a piece of a size, in order.

@@ -24,7 +24,7 @@ mod production;
 mod report;
 
 pub use count::{Counts, count};
-pub use enumerate::{Canonical, Enumerator, Identity};
+pub use enumerate::{Canonical, Enumerator, Identity, Portion};
 pub use file::{Alternative, Binding, Grammar, GrammarError, Limits, Pool, Rule, SHIPPED};
 pub use palette::Palette;
 pub use production::ProductionError;
