@@ -103,10 +103,7 @@ fn second_order_step_response() {
                 let steps = height(&mut set, &template);
                 if !exact.is_nan() {
                     let limit = (exact / step).ceil();
-                    assert!(
-                        steps <= limit && steps >= limit - 1.0 - 0.2 / step,
-                        "{z} {band}"
-                    );
+                    assert!(steps <= limit, "{z} {step} {band}: {steps}");
                     if [0.2, 0.5, 0.7].contains(z) {
                         // Measured to be equal in all of these cases.
                         assert_eq!(steps, limit, "{z} {step} {band}");
@@ -196,19 +193,6 @@ fn staircase_levels() {
             );
         }
     }
-}
-
-/// Where the overshoot equals the band the settling time jumps: 5 % at
-/// z = 0.690107, from 4.341098 to 2.859071 (derived).
-#[test]
-fn settling_time_jumps() {
-    let settle = |z| {
-        height(
-            &mut error_trace(z, 0.001, 30.0),
-            "throughout [?, end] (abs(e) <= 0.05)",
-        ) * 0.001
-    };
-    assert!((settle(0.6901) - 4.341).abs() < 0.03 && (settle(0.69012) - 2.859).abs() < 0.02);
 }
 
 /// First order: 1 - exp(-t) settles to 5, 2 and 1 % at 2.995732, 3.912023 and
@@ -562,4 +546,254 @@ fn overlaps_and_open_ends() {
             ("throughout [?, end] (x >= 1)", 6.0),
         ],
     );
+}
+
+/// Damping ratio, times to 10, 50, 90 and 100 % and to the peak, natural
+/// frequency 1. Derived from the closed form (table 1A of the checks).
+const RISE: &[(f64, [f64; 5])] = &[
+    (0.1, [0.458009, 1.088419, 1.562208, 1.679382, 3.157419]),
+    (0.2, [0.465212, 1.133267, 1.668642, 1.808697, 3.206375]),
+    (0.3, [0.472644, 1.182168, 1.793984, 1.966047, 3.293284]),
+    (0.4, [0.480313, 1.235592, 1.943805, 2.162881, 3.427759]),
+    (0.5, [0.488229, 1.294039, 2.125802, 2.418399, 3.627599]),
+    (0.6, [0.496400, 1.358027, 2.350451, 2.767872, 3.926991]),
+    (0.7, [0.504835, 1.428059, 2.631037, 3.285328, 4.399110]),
+    (0.8, [0.513543, 1.504590, 2.981035, 4.163486, 5.235988]),
+    (0.9, [0.522532, 1.587961, 3.405488, 6.172581, 7.207308]),
+];
+
+/// The step at which a channel `y` first reaches a level.
+fn reached(set: &mut TraceSet, level: f64) -> f64 {
+    height(set, &format!("sometime [0, ?] (y >= {level})"))
+}
+
+/// Times to a level are the next sample after the exact ones; the largest
+/// sample is one of the two beside the exact peak.
+#[test]
+fn rise_and_peak_times() {
+    let step = 0.001;
+    for (z, times) in RISE {
+        let mut set = error_trace(*z, step, 20.0);
+        for (level, exact) in [0.1, 0.5, 0.9, 1.0].into_iter().zip(times) {
+            let steps = reached(&mut set, level);
+            assert_eq!(steps, (exact / step).ceil(), "{z} {level}");
+        }
+        let top = height(&mut set, "throughout [0, end] (y <= ?)");
+        let peak = reached(&mut set, top);
+        assert!((peak - times[4] / step).abs() < 1.0, "{z}: {peak}");
+    }
+    // Rise from 10 to 90 % without overshoot: derived, same table.
+    for (z, exact) in [
+        (1.0, 3.357909),
+        (1.2, 4.371389),
+        (1.5, 5.858277),
+        (2.0, 8.229235),
+    ] {
+        let mut set = error_trace(z, step, 30.0);
+        let rise = reached(&mut set, 0.9) - reached(&mut set, 0.1);
+        assert!((rise - exact / step).abs() < 1.0, "{z}: {rise}");
+    }
+}
+
+/// Next to an extremum the error falls off as 1 - s^2 / 2, and a sample is at
+/// most half a step away: short by a share of step^2 / 8 to leading order
+/// (derived); half as much again is allowed, and `printed` for rounding.
+fn is_sampled_extremum(found: f64, exact: f64, step: f64, printed: f64) -> bool {
+    let least = exact * (1.0 - step * step / 8.0 * 1.5);
+    (least - printed..=exact + printed).contains(&found)
+}
+
+/// The tight band of the sampled overshoot, no overshoot from critical damping
+/// on (table 1A), and the envelope -ln(a sqrt(1 - z^2)) / z above every
+/// settling time (1B); derived.
+#[test]
+fn overshoot_and_envelope_are_bounds() {
+    for (z, overshoot, _) in TABLE {
+        for step in [0.1, 0.01] {
+            let mut set = error_trace(*z, step, 60.0);
+            let top = height(&mut set, "throughout [0, end] (y <= ?)") - 1.0;
+            if *z >= 1.0 {
+                assert!((-1e-6..=0.0).contains(&top), "{z} {step}: {top}");
+                continue;
+            }
+            let sampled = is_sampled_extremum(top, overshoot / 100.0, step, 5.1e-9);
+            assert!(sampled, "{z} {step}: {top}");
+            for band in [0.05, 0.02, 0.01] {
+                let envelope = -(band * (1.0 - z * z).sqrt()).ln() / z;
+                let template = format!("throughout [?, end] (abs(e) <= {band})");
+                let steps = height(&mut set, &template);
+                assert!(steps <= (envelope / step).ceil(), "{z} {step} {band}");
+            }
+        }
+    }
+}
+
+/// The levels Mp^n at the printed times n pi / wd (1D, derived), as far as the
+/// page lists them.
+#[test]
+fn listed_staircase_levels() {
+    let step = 0.001;
+    let listed: [(f64, &[(f64, f64)]); 3] = [
+        (
+            0.2,
+            &[
+                (3.206375, 0.52662060),
+                (6.412749, 0.27732926),
+                (9.619124, 0.14604730),
+                (12.825498, 0.07691152),
+                (16.031873, 0.04050319),
+                (19.238247, 0.02132981),
+            ],
+        ),
+        (
+            0.5,
+            &[
+                (3.627599, 0.16303353),
+                (7.255197, 0.02657993),
+                (10.882796, 0.00433342),
+                (14.510395, 0.00070649),
+            ],
+        ),
+        (0.7, &[(4.399110, 0.04598791), (8.798219, 0.00211489)]),
+    ];
+    for (z, levels) in listed {
+        let mut set = error_trace(z, step, 40.0);
+        let points: Vec<f64> = levels.iter().map(|(t, _)| (t / step).floor()).collect();
+        let found = curve(&mut set, "throughout [?, end] (abs(e) <= ?)", &points);
+        assert_eq!(found.len(), levels.len());
+        for (found, (t, level)) in found.into_iter().zip(levels) {
+            let sampled = is_sampled_extremum(found, *level, step, 5.1e-9);
+            assert!(sampled, "{z} {t}: {found} {level}");
+        }
+    }
+}
+
+/// Between the levels a*(t) = max(|y(t) - 1|, Mp^ceil(t wd / pi)); at the start
+/// the lower level is 0, and from the peak on 1 - Mp^2 (1D, derived).
+#[test]
+fn settling_curve_and_undershoot() {
+    let step = 0.01;
+    for z in [0.2, 0.5, 0.7_f64] {
+        let period = std::f64::consts::PI / (1.0 - z * z).sqrt();
+        let overshoot = (-z * period).exp();
+        let mut set = error_trace(z, step, 40.0);
+        let points: Vec<f64> = (0..60).map(|k| f64::from(k * 17)).collect();
+        let found = curve(&mut set, "throughout [?, end] (abs(e) <= ?)", &points);
+        for (found, point) in found.into_iter().zip(points) {
+            let t = point * step;
+            let extremum = overshoot.powf((t / period).ceil());
+            let exact = extremum.max((step_response(z, t) - 1.0).abs());
+            let sampled = is_sampled_extremum(found, exact, step, 1e-12);
+            assert!(sampled, "{z} {t}: {found} {exact}");
+        }
+        assert_eq!(height(&mut set, "throughout [0, end] (y >= ?)"), 0.0);
+        let peak = (period / step).ceil();
+        let low = height(&mut set, &format!("throughout [{peak}, end] (y >= ?)"));
+        let sampled = is_sampled_extremum(1.0 - low, overshoot * overshoot, step, 1e-12);
+        assert!(sampled, "{z}: {low}");
+    }
+}
+
+/// All three jumps of the settling time (below table 1A, derived): just below
+/// the damping the band is left once more around the peak, just above it is
+/// not. The dampings are printed to 6 digits, so 2e-6 on either side; the peak
+/// is above the band for less than 0.02 then.
+#[test]
+fn settling_time_jumps_at_every_band() {
+    let step = 0.001;
+    for (band, z, below, above) in [
+        (0.05, 0.690107, 4.341098, 2.859071),
+        (0.02, 0.779703, 5.017483, 3.602485),
+        (0.01, 0.826085, 5.574880, 4.191612),
+    ] {
+        let template = format!("throughout [?, end] (abs(e) <= {band})");
+        let settle = |z| height(&mut error_trace(z, step, 30.0), &template) * step;
+        let late = settle(z - 2e-6) - below;
+        assert!((0.0..0.02).contains(&late), "{band}: {late}");
+        let early = settle(z + 2e-6) - above;
+        assert!((0.0..=step).contains(&early), "{band}: {early}");
+    }
+}
+
+/// First order, time constant 1: 63.212056, 86.466472 and 95.021293 % at 1, 2
+/// and 3; from 10 to 90 % in ln 9 = 2.197225 (1D, derived).
+#[test]
+fn first_order_rise() {
+    let step = 0.001;
+    let y: Vec<f64> = (0..10_000)
+        .map(|k| 1.0 - (-f64::from(k) * step).exp())
+        .collect();
+    let mut set = record(&[("y", y)]);
+    for (steps, share) in [
+        (1000.0, 0.63212056),
+        (2000.0, 0.86466472),
+        (3000.0, 0.95021293),
+    ] {
+        let template = format!("throughout [0, {steps}] (y <= ?)");
+        assert!((height(&mut set, &template) - share).abs() < 5.1e-9);
+    }
+    let rise = reached(&mut set, 0.9) - reached(&mut set, 0.1);
+    assert!((rise - 2197.225).abs() < 1.0, "{rise}");
+}
+
+/// Closed-form validity domains (6E, derived) of a ramp, a decay, a sine and a
+/// pulse; and the values the page measured on the sine with step 0.001.
+#[test]
+fn closed_form_validity_domains() {
+    let step = 0.001;
+    let mut set = record(&[
+        ("r", made(20_000, |k| k as f64 * step)),
+        ("q", made(20_000, |k| (-(k as f64) * step / 2.0).exp())),
+        ("x", made(20_000, |k| (k as f64 * step).sin())),
+        ("p", between(20_000, 7000, 8250)),
+    ]);
+    for steps in [500, 1250, 2000, 3000] {
+        let u = f64::from(steps) * step;
+        let ramp = height(&mut set, &format!("throughout [0, {steps}] (r <= ?)"));
+        let time = height(&mut set, &format!("sometime [0, ?] (r >= {u})"));
+        let decay = height(&mut set, &format!("throughout [{steps}, end] (q <= ?)"));
+        let sine = height(&mut set, &format!("throughout [0, {steps}] (x <= ?)"));
+        assert!((ramp - u).abs() < 1e-12, "{u}: {ramp}");
+        assert_eq!(time, f64::from(steps), "{u}");
+        assert!((decay - (-u / 2.0).exp()).abs() < 1e-12, "{u}: {decay}");
+        let exact = u.min(std::f64::consts::FRAC_PI_2).sin();
+        assert!(is_sampled_extremum(sine, exact, step, 1e-12), "{u}: {sine}");
+    }
+    let width = "sometime [0, end] (throughout [0, ?] (p >= 0.5))";
+    assert_eq!(height(&mut set, width), 1250.0);
+    for (steps, dip, crest) in [
+        (1000, 0.877485, -0.877396),
+        (2000, 0.540131, -0.539975),
+        (4000, -0.416164, 0.416501),
+    ] {
+        let inside = format!("sometime [0, 6283] (throughout [0, {steps}] (x >= ?))");
+        let across = format!("throughout [0, 6283] (sometime [0, {steps}] (x >= ?))");
+        let (inside, across) = (height(&mut set, &inside), height(&mut set, &across));
+        assert!((inside - dip).abs() < 1e-6, "{steps}: {inside}");
+        assert!((across - crest).abs() < 1e-6, "{steps}: {across}");
+    }
+}
+
+/// Speed from 0 to 1 in 2 s, 2.5 s at 1 and back in 2 s, a sample every 0.25 s:
+/// acceleration 1/2, and jerk 0.5/0.25 at the corners (row 40 of the
+/// vocabulary's known answers).
+#[test]
+fn rates_on_a_grid_of_quarter_seconds() {
+    let speed = made(27, |k| (k.min(26 - k) as f64 / 8.0).min(1.0));
+    let grid = Grid {
+        step: 0.25,
+        unit: strandline::template::TimeUnit::Second,
+    };
+    let channel = Channel {
+        signal: Signal::channel("v"),
+        unit: None,
+        samples: speed,
+    };
+    let mut set = TraceSet::new(vec!["lift".to_owned()], &[27], None, grid, vec![channel]);
+    for (template, expected) in [
+        ("throughout [0, end] (abs(rate(v)) <= ?)", 0.5),
+        ("throughout [0, end] (abs(rate(rate(v))) <= ?)", 2.0),
+    ] {
+        assert_eq!(height(&mut set, template), expected, "{template}");
+    }
 }
