@@ -218,7 +218,7 @@ fn adjusted_rand_as_fractions() {
     // Hubert and Arabie, J. Classification 2 (1985) 193-218. Values: scikit-
     // learn 1.9.1; 4/7 and 8/33 are also in its documentation and tests, 1/6 in
     // an example of R partitionComparison, data of 4/15 in R shallot; 2/17 is
-    // the example of Rand, JASA 66 (1971) 846-850.
+    // the example of Rand, JASA 66 (1971) 846-850 (its partitions from memory).
     for (a, b, expected) in [
         ("0011", "0011", 1.0),
         ("0011", "1100", 1.0),
@@ -238,7 +238,8 @@ fn adjusted_rand_as_fractions() {
     }
     // Contingency tables of Yeung and Ruzzo, Bioinformatics 17 (2001),
     // supplement (.313), and of Manning, Raghavan and Schuetze, Introduction to
-    // Information Retrieval (2008), section 16.3.
+    // Information Retrieval (2008), section 16.3. Both tables are quoted from
+    // memory; their index was computed with scikit-learn 1.9.1.
     let yeung = [[1, 1, 0], [1, 2, 1], [0, 0, 4]];
     let manning = [[5, 1, 2], [1, 4, 0], [0, 1, 3]];
     for (table, expected) in [(yeung, 266.0 / 851.0), (manning, 60.0 / 247.0)] {
