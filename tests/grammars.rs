@@ -423,6 +423,11 @@ const MISTAKES: &[(&str, &str, &str)] = &[
         "1:8",
         "takes 2 argument(s)",
     ),
+    (
+        "goal = spread(CHANNEL, 0) >= ?\n",
+        "1:24",
+        "must be more than zero",
+    ),
     ("goal = CHANNEL <= CHANNEL\n", "1:19", "number or a slot"),
     ("goal = sometime FLAG\n", "1:17", "a window such as"),
     (

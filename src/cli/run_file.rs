@@ -159,7 +159,7 @@ fn is_complete(reader: &RunReader, limits: &Limits) -> Result<bool, CliError> {
         Some(StopReason::Templates) => {
             scored.is_some_and(|scored| limits.templates as u64 <= scored)
         }
-        Some(StopReason::Time) => false,
+        // More time, or more of it after an interruption, goes on.
         _ => false,
     })
 }

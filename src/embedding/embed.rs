@@ -137,14 +137,6 @@ pub fn embed_with(
     Ok(embedding)
 }
 
-/// The embeddings of many templates, in their order, on all cores.
-pub fn embed_all(formulas: &[Formula], traces: &TraceSet) -> Vec<Result<Embedding, EmbedError>> {
-    formulas
-        .par_iter()
-        .map(|formula| embed(formula, traces))
-        .collect()
-}
-
 /// The verdict of a specification on every trace.
 ///
 /// # Errors
@@ -173,13 +165,11 @@ fn plan_axis(formula: &Formula, axis: &Axis) -> PlanAxis {
 /// The signal that a threshold slot limits.
 fn signal_of(resolved: &Resolved, slot: SlotId) -> Option<SignalId> {
     match &resolved.shape {
-        Shape::Compare { signal, limit, .. } => (*limit == Limit::Slot(slot)).then_some(*signal),
-        Shape::Flag { .. } => None,
-        Shape::And(operands) | Shape::Or(operands) => {
-            operands.iter().find_map(|operand| signal_of(operand, slot))
-        }
-        Shape::Throughout(_, operand) | Shape::Sometime(_, operand) => signal_of(operand, slot),
-        Shape::Until(_, left, right) => signal_of(left, slot).or_else(|| signal_of(right, slot)),
+        Shape::Compare { signal, limit, .. } if *limit == Limit::Slot(slot) => Some(*signal),
+        shape => shape
+            .operands()
+            .into_iter()
+            .find_map(|operand| signal_of(operand, slot)),
     }
 }
 
@@ -189,18 +179,14 @@ fn lower_bound(resolved: &Resolved, slot: SlotId) -> Option<u32> {
         (Step::At(lower), Step::Slot(upper)) if upper == slot => Some(lower),
         _ => None,
     };
-    match &resolved.shape {
-        Shape::Compare { .. } | Shape::Flag { .. } => None,
-        Shape::And(operands) | Shape::Or(operands) => operands
-            .iter()
-            .find_map(|operand| lower_bound(operand, slot)),
-        Shape::Throughout(span, operand) | Shape::Sometime(span, operand) => {
-            own(span).or_else(|| lower_bound(operand, slot))
+    let here = match &resolved.shape {
+        Shape::Throughout(span, _) | Shape::Sometime(span, _) | Shape::Until(span, _, _) => {
+            own(span)
         }
-        Shape::Until(span, left, right) => own(span)
-            .or_else(|| lower_bound(left, slot))
-            .or_else(|| lower_bound(right, slot)),
-    }
+        _ => None,
+    };
+    let mut operands = resolved.shape.operands().into_iter();
+    here.or_else(|| operands.find_map(|operand| lower_bound(operand, slot)))
 }
 
 /// A demand as a height.

@@ -12,9 +12,7 @@ mod measure;
 mod resolve;
 mod table;
 
-pub use embed::{
-    DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_all, embed_with, verdicts,
-};
+pub use embed::{DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_with, verdicts};
 pub use grid::{threshold_points, time_points};
 pub use measure::{MeasureOptions, MeasureRow, MeasureTable, measure};
 pub use resolve::{ResolveError, resolve, resolve_derived};

@@ -58,7 +58,7 @@ pub fn resolve_derived(formula: &Formula, traces: &TraceSet) -> Result<Resolved,
         traces,
         next_slot: 0,
     };
-    resolver.formula(formula, Place::Outermost)
+    Ok(*resolver.formula(formula, Place::Outermost)?)
 }
 
 /// Where a formula stands.
@@ -103,42 +103,45 @@ impl Resolver<'_> {
         slot
     }
 
-    fn formula(&mut self, formula: &Formula, place: Place) -> Result<Resolved, ResolveError> {
+    fn formula(&mut self, formula: &Formula, place: Place) -> Result<Box<Resolved>, ResolveError> {
         let shape = match formula.node() {
             Node::Atom(atom) => self.atom(atom)?,
-            Node::And(operands) => Shape::And(self.all(operands, place)?),
-            Node::Or(operands) => Shape::Or(self.all(operands, place)?),
+            Node::And(operands) => Shape::And(
+                operands
+                    .iter()
+                    .map(|operand| self.formula(operand, place))
+                    .collect::<Result<_, _>>()?,
+            ),
+            Node::Or(operands) => Shape::Or(
+                operands
+                    .iter()
+                    .map(|operand| self.formula(operand, place))
+                    .collect::<Result<_, _>>()?,
+            ),
             Node::Throughout(window, operand) => {
                 let span = self.span(window)?;
                 let below = place.below(window, Reading::Weak);
-                Shape::Throughout(span, Box::new(self.formula(operand, below)?))
+                Shape::Throughout(span, self.formula(operand, below)?)
             }
             Node::Sometime(window, operand) => {
                 let span = self.span(window)?;
                 let below = place.below(window, Reading::Strong);
-                Shape::Sometime(span, Box::new(self.formula(operand, below)?))
+                Shape::Sometime(span, self.formula(operand, below)?)
             }
             Node::Until(window, left, right) => {
                 let left = self.formula(left, place.below(window, Reading::Weak))?;
                 let span = self.span(window)?;
                 let right = self.formula(right, place.below(window, Reading::Strong))?;
-                Shape::Until(span, Box::new(left), Box::new(right))
+                Shape::Until(span, left, right)
             }
         };
-        Ok(Resolved {
+        Ok(Box::new(Resolved {
             reading: place.reading(),
             shape,
-        })
+        }))
     }
 
-    fn all(&mut self, operands: &[Formula], place: Place) -> Result<Vec<Resolved>, ResolveError> {
-        operands
-            .iter()
-            .map(|operand| self.formula(operand, place))
-            .collect()
-    }
-
-    fn atom(&mut self, atom: &Atom) -> Result<Shape, ResolveError> {
+    fn atom(&mut self, atom: &Atom) -> Result<Shape<Box<Resolved>>, ResolveError> {
         let signal = atom.signal();
         let id = self
             .traces

@@ -101,17 +101,16 @@ impl Flags {
                 flags
             }
         };
-        family.or(Flags::reading(window, operand, existential))
+        family.or(Flags::reading(window, existential))
     }
 
     /// How the end of a record reads a windowed formula. With `end` the kind
     /// sets the reading, so all three are one; a bounded window outermost reads
     /// its operand by kind, as the weak (strong) reading does.
-    fn reading(window: Window, operand: Flags, existential: bool) -> Flags {
+    fn reading(window: Window, existential: bool) -> Flags {
         if window.upper() == Bound::End {
             return Flags(16 | 32 | 64);
         }
-        let _ = operand;
         if existential {
             Flags::ROOT_STRONG
         } else {

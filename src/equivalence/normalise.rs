@@ -242,20 +242,15 @@ impl Normaliser<'_> {
             Node::And(parts) if existential => parts,
             _ => return None,
         };
-        let (at, below) = parts.iter().enumerate().find_map(|(at, part)| {
-            let (window, below) = same_kind(part, existential)?;
-            let whole = starts_now(window) && parts.contains(below);
-            whole.then_some((at, below.clone()))
-        })?;
-        if !self.has(&below, Flags::CHAIN) {
-            return None;
-        }
         // Beside other operands the weaker of the two would still matter.
         if parts.len() > 2 {
             return None;
         }
-        let _ = at;
-        Some(below)
+        let below = parts.iter().find_map(|part| {
+            let (window, below) = same_kind(part, existential)?;
+            (starts_now(window) && parts.contains(below)).then(|| below.clone())
+        })?;
+        self.has(&below, Flags::CHAIN).then_some(below)
     }
 
     fn until(

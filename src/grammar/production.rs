@@ -9,15 +9,13 @@
 //! rule on both sides.
 
 use std::collections::BTreeMap;
-use std::ops::Range;
 
 use super::file::{Alternative, Binding, Grammar, Pool};
 use super::palette::Palette;
 use super::piece::{Head, Piece, PieceId, Value};
-use crate::support::Finite;
 use crate::template::{
-    Ast, AstKind, Bound, Duration, FUNCTIONS, Function, Kind, Signal, TextError, Threshold,
-    TimeUnit, Window,
+    Ast, AstKind, Bound, Function, Kind, Signal, TextError, Window, called_function, duration,
+    threshold, window_length,
 };
 
 /// A mistake in a grammar that shows when its rules are put together.
@@ -158,9 +156,8 @@ impl Compiler<'_> {
                 ];
                 Ok(self.push(Head::Derived(Function::Difference), sides))
             }
-            (AstKind::Number(value, unit), Place::Time) => {
-                let duration = duration(*value, unit.as_deref(), &ast.span)?;
-                Ok(self.leaf(Value::Bound(Bound::After(duration))))
+            (AstKind::Number(..), Place::Time) => {
+                Ok(self.leaf(Value::Bound(Bound::After(duration(ast)?))))
             }
             (AstKind::Slot(_), Place::Time) => Ok(self.leaf(Value::Bound(Bound::Slot))),
             (AstKind::End, Place::Time) => Ok(self.leaf(Value::Bound(Bound::End))),
@@ -305,16 +302,7 @@ impl Compiler<'_> {
         place: Place,
         bound: &Bindings,
     ) -> Result<PieceId, ProductionError> {
-        let function = Function::from_name(name).ok_or_else(|| {
-            let known: Vec<&str> = FUNCTIONS.iter().map(|shape| shape.name).collect();
-            TextError::new(
-                format!("there is no function `{name}`"),
-                ast.span.clone(),
-                "unknown function",
-            )
-            .with_help(format!("the functions are: {}", known.join(", ")))
-        })?;
-        let shape = function.shape();
+        let shape = called_function(name, arguments.len(), &ast.span)?;
         let fits = match place {
             Place::Numeric => shape.result == Kind::Numeric,
             _ => shape.result == Kind::Flag,
@@ -322,16 +310,10 @@ impl Compiler<'_> {
         if !fits {
             return Err(misplaced(ast, place));
         }
-        let expected = shape.arguments.len() + usize::from(shape.takes_duration);
-        if arguments.len() != expected {
-            return Err(TextError::new(
-                format!(
-                    "`{name}` takes {expected} argument(s), not {}",
-                    arguments.len()
-                ),
-                ast.span.clone(),
-                shape.definition,
-            ));
+        if let Some(length) = arguments.get(shape.arguments.len())
+            && matches!(length.kind, AstKind::Number(..))
+        {
+            window_length(length)?;
         }
         let places = shape.arguments.iter().map(|kind| match kind {
             Kind::Numeric => Place::Numeric,
@@ -342,7 +324,7 @@ impl Compiler<'_> {
             .zip(places.chain([Place::Time]))
             .map(|(argument, place)| self.piece(argument, place, bound))
             .collect::<Result<_, _>>()?;
-        Ok(self.push(Head::Derived(function), parts))
+        Ok(self.push(Head::Derived(shape.function), parts))
     }
 }
 
@@ -374,41 +356,6 @@ fn extended(
             more
         })
         .collect()
-}
-
-fn threshold(ast: &Ast) -> Result<Threshold, ProductionError> {
-    match &ast.kind {
-        AstKind::Slot(_) => Ok(Threshold::Slot),
-        AstKind::Number(value, unit) => {
-            let value = finite(*value, &ast.span)?;
-            Ok(Threshold::Number(value, unit.as_deref().map(Into::into)))
-        }
-        _ => Err(TextError::new(
-            "the right side of a comparison must be a number or a slot",
-            ast.span.clone(),
-            "expected a number or `?`",
-        )),
-    }
-}
-
-fn duration(value: f64, unit: Option<&str>, span: &Range<usize>) -> Result<Duration, TextError> {
-    let unit = match unit {
-        None => TimeUnit::Data,
-        Some(name) => TimeUnit::from_name(name).ok_or_else(|| {
-            TextError::new(
-                format!("`{name}` is not a unit of time"),
-                span.clone(),
-                "expected us, ms, s, min, h, d or step",
-            )
-        })?,
-    };
-    let value = finite(value, span)?;
-    Ok(Duration { value, unit })
-}
-
-fn finite(value: f64, span: &Range<usize>) -> Result<Finite, TextError> {
-    Finite::new(value)
-        .map_err(|error| TextError::new(error.to_string(), span.clone(), "not finite"))
 }
 
 fn misplaced(ast: &Ast, place: Place) -> TextError {

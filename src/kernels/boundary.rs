@@ -10,8 +10,8 @@
 
 use std::rc::Rc;
 
-use super::plan::{Op, Plan};
-use super::resolved::{Limit, Reading, Span, Step};
+use super::plan::Plan;
+use super::resolved::{Limit, Reading, Shape, Span, Step};
 use super::runs;
 use super::window::{fold_at, sliding_max, sliding_min};
 use crate::support::{SignalId, SlotId};
@@ -89,17 +89,17 @@ impl<'a> Evaluation<'a> {
     fn at_start(&mut self, node: usize) -> u32 {
         let plan = self.plan;
         match &plan.nodes[node].op {
-            Op::And(parts) => parts
+            Shape::And(parts) => parts
                 .iter()
                 .map(|part| self.at_start(*part))
                 .max()
                 .unwrap_or(0),
-            Op::Or(parts) => parts
+            Shape::Or(parts) => parts
                 .iter()
                 .map(|part| self.at_start(*part))
                 .min()
                 .unwrap_or(NEVER),
-            Op::Throughout(span, operand) if self.free(span).is_none() => {
+            Shape::Throughout(span, operand) if self.free(span).is_none() => {
                 let demands = self.demands(*operand);
                 fold_at(
                     &demands,
@@ -109,7 +109,7 @@ impl<'a> Evaluation<'a> {
                     u32::max,
                 )
             }
-            Op::Sometime(span, operand) if self.free(span).is_none() => {
+            Shape::Sometime(span, operand) if self.free(span).is_none() => {
                 let demands = self.demands(*operand);
                 fold_at(
                     &demands,
@@ -137,17 +137,17 @@ impl<'a> Evaluation<'a> {
     fn compute(&mut self, node: usize) -> Vec<u32> {
         let plan = self.plan;
         match &plan.nodes[node].op {
-            Op::Compare {
+            Shape::Compare {
                 signal,
                 comparison,
                 limit,
             } => self.compare(node, *signal, *comparison, *limit),
-            Op::Flag { signal, negated } => {
+            Shape::Flag { signal, negated } => {
                 self.atom(node, *signal, |sample| boolean((sample > 0.5) != *negated))
             }
-            Op::And(parts) => self.fold(parts, u32::max),
-            Op::Or(parts) => self.fold(parts, u32::min),
-            Op::Throughout(span, operand) => {
+            Shape::And(parts) => self.fold(parts, u32::max),
+            Shape::Or(parts) => self.fold(parts, u32::min),
+            Shape::Throughout(span, operand) => {
                 let demands = self.demands(*operand);
                 match self.free(span) {
                     None => sliding_max(&demands, self.window(span), self.beyond(*operand)),
@@ -157,7 +157,7 @@ impl<'a> Evaluation<'a> {
                     Some(Free::Lower) => runs::last_violation(&demands),
                 }
             }
-            Op::Sometime(span, operand) => {
+            Shape::Sometime(span, operand) => {
                 let demands = self.demands(*operand);
                 match self.free(span) {
                     None => sliding_min(&demands, self.window(span), self.beyond(*operand)),
@@ -167,7 +167,7 @@ impl<'a> Evaluation<'a> {
                     Some(Free::Lower) => runs::last_time(&demands),
                 }
             }
-            Op::Until(span, left, right) => {
+            Shape::Until(span, left, right) => {
                 let (before, then) = (self.demands(*left), self.demands(*right));
                 match self.free(span) {
                     None => super::until::until(

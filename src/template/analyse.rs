@@ -8,7 +8,7 @@ use super::atom::{Atom, Comparison, Threshold};
 use super::duration::{Duration, TimeUnit};
 use super::error::TextError;
 use super::formula::Formula;
-use super::function::{FUNCTIONS, Function, Kind};
+use super::function::{FUNCTIONS, Function, FunctionShape, Kind};
 use super::parse::parse_ast;
 use super::signal::Signal;
 use super::window::{Bound, Window, WindowError};
@@ -122,27 +122,33 @@ fn compare(
     right: &Ast,
     negate: bool,
 ) -> Result<Formula, TextError> {
-    let threshold = match &right.kind {
-        AstKind::Slot(_) => Threshold::Slot,
-        AstKind::Number(value, unit) => Threshold::Number(
-            finite(*value, &right.span)?,
-            unit.as_deref().map(Into::into),
-        ),
-        _ => {
-            return Err(TextError::new(
-                "the right side of a comparison must be a number or a slot",
-                right.span.clone(),
-                "expected a number or `?`",
-            )
-            .with_help("to compare two channels, write x - y <= ?"));
-        }
-    };
+    let threshold = threshold(right)?;
     let atom = Atom::Compare {
         signal: signal(left, Kind::Numeric)?,
         comparison,
         threshold,
     };
     Ok(Formula::atom(if negate { atom.negated() } else { atom }))
+}
+
+/// The right side of a comparison.
+///
+/// # Errors
+/// When it is neither a number nor a slot.
+pub fn threshold(ast: &Ast) -> Result<Threshold, TextError> {
+    match &ast.kind {
+        AstKind::Slot(_) => Ok(Threshold::Slot),
+        AstKind::Number(value, unit) => Ok(Threshold::Number(
+            finite(*value, &ast.span)?,
+            unit.as_deref().map(Into::into),
+        )),
+        _ => Err(TextError::new(
+            "the right side of a comparison must be a number or a slot",
+            ast.span.clone(),
+            "expected a number or `?`",
+        )
+        .with_help("to compare two channels, write x - y <= ?")),
+    }
 }
 
 fn finite(value: f64, span: &Range<usize>) -> Result<Finite, TextError> {
@@ -184,43 +190,55 @@ fn signal(ast: &Ast, kind: Kind) -> Result<Signal, TextError> {
     ))
 }
 
-fn call(ast: &Ast, name: &str, arguments: &[Ast]) -> Result<Signal, TextError> {
-    let Some(function) = Function::from_name(name).filter(|f| *f != Function::Difference) else {
-        let known: Vec<&str> = FUNCTIONS
-            .iter()
-            .map(|shape| shape.name)
-            .filter(|name| *name != "-")
-            .collect();
+/// The row of the function that a call names, after checking the number of its
+/// arguments.
+///
+/// # Errors
+/// When there is no such function, or it takes another number of arguments.
+pub fn called_function(
+    name: &str,
+    count: usize,
+    span: &Range<usize>,
+) -> Result<&'static FunctionShape, TextError> {
+    // The difference has a sign in place of a name.
+    let named = || FUNCTIONS.iter().filter(|shape| shape.name != "-");
+    let Some(shape) = named().find(|shape| shape.name == name) else {
+        let known: Vec<&str> = named().map(|shape| shape.name).collect();
         return Err(TextError::new(
             format!("there is no function `{name}`"),
-            ast.span.clone(),
+            span.clone(),
             "unknown function",
         )
         .with_help(format!("the functions are: {}", known.join(", "))));
     };
-    let shape = function.shape();
     let expected = shape.arguments.len() + usize::from(shape.takes_duration);
-    if arguments.len() != expected {
+    if count != expected {
         return Err(TextError::new(
-            format!(
-                "`{name}` takes {expected} argument(s), not {}",
-                arguments.len()
-            ),
-            ast.span.clone(),
+            format!("`{name}` takes {expected} argument(s), not {count}"),
+            span.clone(),
             shape.definition,
         ));
     }
+    Ok(shape)
+}
+
+fn call(ast: &Ast, name: &str, arguments: &[Ast]) -> Result<Signal, TextError> {
+    let shape = called_function(name, arguments.len(), &ast.span)?;
     let (signals, rest) = arguments.split_at(shape.arguments.len());
     let signals = signals
         .iter()
         .zip(shape.arguments)
         .map(|(argument, kind)| signal(argument, *kind))
         .collect::<Result<Vec<_>, _>>()?;
-    let duration = rest.first().map(positive_duration).transpose()?;
-    Ok(Signal::derived(function, signals, duration))
+    let duration = rest.first().map(window_length).transpose()?;
+    Ok(Signal::derived(shape.function, signals, duration))
 }
 
-fn positive_duration(ast: &Ast) -> Result<Duration, TextError> {
+/// The length of a moving window.
+///
+/// # Errors
+/// When it is no duration, or not above zero.
+pub fn window_length(ast: &Ast) -> Result<Duration, TextError> {
     let duration = duration(ast)?;
     if duration.value > Finite::from(0) {
         return Ok(duration);
@@ -232,7 +250,11 @@ fn positive_duration(ast: &Ast) -> Result<Duration, TextError> {
     ))
 }
 
-fn duration(ast: &Ast) -> Result<Duration, TextError> {
+/// A duration as written.
+///
+/// # Errors
+/// When it is no number, or its unit is no unit of time.
+pub fn duration(ast: &Ast) -> Result<Duration, TextError> {
     let AstKind::Number(value, unit) = &ast.kind else {
         return Err(TextError::new(
             "a duration is needed here",

@@ -33,7 +33,9 @@ mod slot;
 mod token;
 mod window;
 
-pub use analyse::{analyse, parse, parse_signal};
+pub use analyse::{
+    analyse, called_function, duration, parse, parse_signal, threshold, window_length,
+};
 pub use ast::{Ast, AstKind};
 pub use atom::{Atom, Comparison, Threshold};
 pub use duration::{Duration, TimeUnit};

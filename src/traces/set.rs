@@ -175,17 +175,6 @@ impl TraceSet {
         self.labels.as_ref()
     }
 
-    /// Sets or removes the labels.
-    ///
-    /// # Panics
-    /// When there are not as many labels as traces.
-    pub fn set_labels(&mut self, labels: Option<Labels>) {
-        if let Some(labels) = &labels {
-            assert_eq!(labels.of_trace.len(), self.names.len());
-        }
-        self.labels = labels;
-    }
-
     /// The time grid.
     pub fn grid(&self) -> &Grid {
         &self.grid

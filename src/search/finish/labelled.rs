@@ -37,13 +37,7 @@ pub(super) fn labelled(
         names: &labels.names,
         are_labels: true,
     };
-    let mut finished = Finished {
-        ranked: Vec::new(),
-        explanations: Vec::new(),
-        verdict: Verdict::Chance,
-        verdict_text: String::new(),
-        held_out: None,
-    };
+    let mut finished = Finished::empty();
     let mut panel: Vec<(Described, &Embedding)> = Vec::new();
     let described: Vec<Described> = founders
         .par_iter()

@@ -34,6 +34,19 @@ pub struct Finished {
     pub held_out: Option<HeldOut>,
 }
 
+impl Finished {
+    /// Nothing found yet.
+    fn empty() -> Self {
+        Finished {
+            ranked: Vec::new(),
+            explanations: Vec::new(),
+            verdict: Verdict::Chance,
+            verdict_text: String::new(),
+            held_out: None,
+        }
+    }
+}
+
 /// One template that stands for a family.
 struct Founder {
     kept: usize,

@@ -28,13 +28,7 @@ pub(super) fn unlabelled(harvest: &Harvest, traces: &TraceSet, settings: &Settin
     let chance = (traces.count() >= 20 && !founders.is_empty())
         .then(|| surrogate_chance(&embeddings, SURROGATE_DRAWS, settings.seed))
         .flatten();
-    let mut finished = Finished {
-        ranked: Vec::new(),
-        explanations: Vec::new(),
-        verdict: Verdict::Chance,
-        verdict_text: String::new(),
-        held_out: None,
-    };
+    let mut finished = Finished::empty();
     (finished.verdict, finished.verdict_text) =
         unlabelled_verdict(chance, founders.is_empty(), traces.count());
     for (rank, founder) in founders.iter().enumerate() {
