@@ -40,8 +40,8 @@
 //! ```
 //!
 //! The modules, in the order in which one may use those before it: support,
-//! template, grammar, equivalence, traces, kernels, embedding, grouping,
-//! scoring, description, search, store, handover, report, cli.
+//! template, grammar, equivalence, traces, kernels, embedding, comparison,
+//! grouping, scoring, description, search, store, handover, report, cli.
 #![cfg_attr(
     test,
     allow(
@@ -63,6 +63,8 @@ pub mod traces;
 pub mod kernels;
 
 pub mod embedding;
+
+pub mod comparison;
 
 pub mod grouping;
 

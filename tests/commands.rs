@@ -263,6 +263,42 @@ fn measure_prints_boundaries_as_csv() {
 }
 
 #[test]
+fn equal_gives_the_reason_or_a_witness() {
+    let place = Place::new();
+    place.write("m.csv", "trace,time,x\na,0,1\na,1,5\nb,0,4\nb,1,3\n");
+    let whole = "throughout~[0,~end]~(x~<=~?)";
+    let nested = "throughout~[0,~end]~throughout~[0,~?]~(x~<=~?)";
+    let answer = place.json(&format!("equal {whole} {nested} --json"));
+    assert_eq!(answer["same"], true);
+    assert_eq!(answer["because"][0]["rule"], "nest-slots");
+    assert!(answer.get("witness").is_none());
+    let bounded = "throughout~[0,~?]~(x~<=~?)";
+    let answer = place.json(&format!("equal {whole} {bounded} --json --on m.csv"));
+    assert_eq!(answer["same"], false);
+    let witness = &answer["witness"];
+    assert_eq!(witness["template"], 2);
+    let samples = witness["records"][0]["samples"]["x"].as_array().unwrap();
+    assert!((1..=8).contains(&samples.len()), "{witness}");
+    assert_eq!(answer["on"]["traces"], 2);
+    let text = place.ok("equal x~<=~3 x~<=~4 --on m.csv");
+    assert!(text.starts_with("Different."), "{text}");
+    assert!(
+        text.contains("On this data: different. 1 of 2 traces: b."),
+        "{text}"
+    );
+    let text = place.ok(&format!("equal {whole} {nested} --on m.csv"));
+    assert!(text.contains("indistinguishable"), "{text}");
+    for (line, message) in [
+        ("equal x~<=~3 x~<=~? --on m.csv", "one of the two has slots"),
+        ("equal x~<= y", "the text stops too early"),
+        ("equal x~<=~? nosuch~<=~? --on m.csv", "nosuch"),
+    ] {
+        let error = place.fails(line, 2);
+        assert!(error.contains(message), "{line}: {error}");
+    }
+}
+
+#[test]
 fn grammars_are_counted_and_their_mistakes_drawn() {
     let place = Place::new();
     let text = place.ok("grammar settling");
@@ -427,7 +463,7 @@ fn help_and_readme_show_commands_that_work() {
         "{help}"
     );
     let commands = [
-        "search", "ranking", "explain", "handover", "assign", "measure", "grammar",
+        "search", "ranking", "explain", "handover", "assign", "measure", "grammar", "equal",
     ];
     for command in commands {
         assert!(help.contains(command));

@@ -14,6 +14,7 @@ const LAYERS: &[&str] = &[
     "traces",
     "kernels",
     "embedding",
+    "comparison",
     "grouping",
     "scoring",
     "description",

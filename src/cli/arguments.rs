@@ -1,7 +1,7 @@
 //! Arguments that several commands share.
 
 use std::io;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
 
@@ -26,6 +26,20 @@ pub(super) struct TracesFrom {
     /// A CSV file, or a folder of CSV files
     #[arg(value_name = "TRACES")]
     pub(super) path: PathBuf,
+    #[command(flatten)]
+    pub(super) how: ReadOptions,
+}
+
+impl TracesFrom {
+    /// Reads the traces and says on standard error what was noticed.
+    pub(super) fn load(&self) -> Result<Loaded, CliError> {
+        self.how.load(&self.path)
+    }
+}
+
+/// How traces are read.
+#[derive(Debug, Clone, Args)]
+pub(super) struct ReadOptions {
     /// How the traces are laid out; told from the files when not given
     #[arg(long, value_name = "LAYOUT")]
     pub(super) layout: Option<LayoutName>,
@@ -40,9 +54,9 @@ pub(super) struct TracesFrom {
     pub(super) max_gap: Option<u32>,
 }
 
-impl TracesFrom {
-    /// Reads the traces and says on standard error what was noticed.
-    pub(super) fn load(&self) -> Result<Loaded, CliError> {
+impl ReadOptions {
+    /// Reads traces and says on standard error what was noticed.
+    pub(super) fn load(&self, path: &Path) -> Result<Loaded, CliError> {
         let mut options = LoadOptions {
             layout: self.layout.map(|layout| match layout {
                 LayoutName::Long => Layout::Long,
@@ -56,8 +70,8 @@ impl TracesFrom {
         if self.max_gap.is_some() {
             options.max_gap = self.max_gap;
         }
-        let loaded = traces::load(&self.path, &options)
-            .map_err(|error| CliError::input(error.to_string()))?;
+        let loaded =
+            traces::load(path, &options).map_err(|error| CliError::input(error.to_string()))?;
         for finding in &loaded.findings {
             terminal::remark(&format!("strandline: {finding}"));
         }

@@ -7,6 +7,7 @@
 
 mod arguments;
 mod assign;
+mod equal;
 mod error;
 mod explain;
 mod grammar;
@@ -61,6 +62,8 @@ enum Command {
     Assign(assign::Arguments),
     /// The boundary of a template on each trace, as CSV
     Measure(measure::Arguments),
+    /// Whether two templates are the same: the reason, or records that tell them apart
+    Equal(equal::Arguments),
     /// Check and count a grammar
     Grammar(grammar::Arguments),
     /// Print a shell's completion script
@@ -97,6 +100,7 @@ fn dispatch(command: Command) -> Result<u8, CliError> {
         Command::Handover(arguments) => handover::run(&arguments),
         Command::Assign(arguments) => assign::run(&arguments),
         Command::Measure(arguments) => measure::run(&arguments),
+        Command::Equal(arguments) => equal::run(&arguments),
         Command::Grammar(arguments) => grammar::run(&arguments),
         Command::Completions(shell) => shell.print(&mut Cli::command()),
     }

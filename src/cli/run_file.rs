@@ -110,8 +110,8 @@ fn inputs(
     let labels = loaded.traces.labels().filter(|_| settings.use_labels);
     json!({
         "data": loaded.digest,
-        "channels": arguments.traces.channels,
-        "longest mended gap": arguments.traces.max_gap,
+        "channels": arguments.traces.how.channels,
+        "longest mended gap": arguments.traces.how.max_gap,
         "labels used": labels.is_some(),
         "grammars": grammars,
         "share held out": settings.hold_out,

@@ -49,6 +49,9 @@ pub(super) struct Arguments {
     /// Stop after so much time, such as 30min or 8h
     #[arg(long = "for", value_name = "TIME", value_parser = time)]
     pub(super) time: Option<std::time::Duration>,
+    /// Stop when comparing templates takes so much memory, such as 8GiB
+    #[arg(long, value_name = "SIZE", default_value = "4GiB", value_parser = bytes)]
+    pub(super) memory: usize,
     /// Number of threads; all cores when not given (the result is the same)
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=1024))]
     pub(super) threads: Option<u16>,
@@ -81,6 +84,26 @@ fn time(text: &str) -> Result<std::time::Duration, String> {
     }
 }
 
+/// A size such as `8GiB`.
+fn bytes(text: &str) -> Result<usize, String> {
+    let wrong = || "expected a size such as 500MiB or 8GiB".to_owned();
+    let split = text.find(|c: char| !c.is_ascii_digit() && c != '.');
+    let (number, unit) = text.split_at(split.ok_or_else(wrong)?);
+    let scale = match unit {
+        "KiB" => 10,
+        "MiB" => 20,
+        "GiB" => 30,
+        "TiB" => 40,
+        _ => return Err(wrong()),
+    };
+    let number: f64 = number.parse().map_err(|_| wrong())?;
+    let bytes = number * f64::from(1_u32 << 10).powi(scale / 10);
+    if bytes < 1e6 {
+        return Err("less than 1 MiB is not enough for any search".to_owned());
+    }
+    Ok(bytes as usize)
+}
+
 /// Runs the command.
 pub(super) fn run(arguments: &Arguments) -> Result<u8, CliError> {
     if let Some(threads) = arguments.threads {
@@ -94,6 +117,7 @@ pub(super) fn run(arguments: &Arguments) -> Result<u8, CliError> {
         templates: arguments.templates,
         size: arguments.size,
         time: arguments.time,
+        memory: arguments.memory,
     };
     let settings = Settings {
         grammars: arguments.grammars.clone(),

@@ -8,12 +8,14 @@
 
 mod embed;
 mod grid;
+mod likeness;
 mod measure;
 mod resolve;
 mod table;
 
 pub use embed::{DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_with, verdicts};
 pub use grid::{threshold_points, time_points};
+pub use likeness::{column_digests, mean_scaled_heights};
 pub use measure::{MeasureOptions, MeasureRow, MeasureTable, measure};
 pub use resolve::{ResolveError, resolve, resolve_derived};
 pub use table::{Axis, Embedding};

@@ -1,227 +1,479 @@
 //! The judge of rules: families worked out value by value on short traces.
 //!
-//! A family is the set, over all values of its slots, of what its members say
-//! on a sample of short traces: in the weak reading and in the strong one at
-//! every instant, and outermost for every suffix. The evaluator is written
-//! straight from the definition and shares nothing with the kernels.
+//! A member of a family (the template with all slots filled) says three things
+//! at each instant of a trace: its weak verdict, its strong one, and its verdict
+//! when it stands outermost on the record that starts there. A family is the
+//! set of what its members say on a sample of traces. All traces have eight
+//! samples, so a verdict on a trace is one byte, bit t being the instant t; a
+//! window is a shift that brings in the value beyond the record (true in the
+//! weak reading, false in the strong one). Outermost, bit t is the verdict on
+//! the record that starts at t, so records of one to eight samples are covered.
+//!
+//! A pass is evidence, a difference is proof. The evaluator is written from the
+//! definition and shares nothing with the kernels; a test compares the two.
 
-use std::collections::BTreeSet;
+use std::collections::{BTreeSet, HashSet};
 
 use crate::support::Stream;
-use crate::template::{Atom, Bound, Formula, Node, Signal, Threshold, TimeUnit, Window};
+use crate::template::{
+    Atom, Bound, Duration, Formula, Kind, Node, Signal, Threshold, TimeUnit, Window,
+};
 
-/// A short trace: samples of named signals, `None` where not known. Values of
-/// channels are small whole numbers, flags 0 and 1.
-#[derive(Debug, Clone, PartialEq)]
-pub struct ShortTrace {
-    /// The signals, in order of first use.
-    pub signals: Vec<(Signal, Vec<Option<f64>>)>,
-    /// Number of samples.
-    pub length: usize,
+/// Samples of a trace.
+pub const LENGTH: usize = 8;
+
+/// Values that channels take: 0, 1, 2, 3.
+const VALUES: usize = 4;
+
+/// Thresholds that slots take.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Thresholds {
+    /// The values of the data only.
+    InRange,
+    /// One value below and one above the data too.
+    Beyond,
 }
 
-/// Random short traces of some signals: a mixture of lengths and kinds, with a
-/// few unknown samples.
-pub fn short_traces(
-    signals: &[Signal],
+/// A signal of the traces.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Column {
+    /// The signal.
+    pub signal: Signal,
+    /// For each trace its samples (flags 0 and 1); `None` where not known.
+    pub samples: Vec<[Option<f64>; LENGTH]>,
+}
+
+impl Column {
+    /// The values that a threshold of this signal takes.
+    pub fn thresholds(&self, which: Thresholds) -> Vec<f64> {
+        let mut values: Vec<f64> = self.samples.iter().flatten().flatten().copied().collect();
+        values.sort_unstable_by(f64::total_cmp);
+        values.dedup();
+        if let (Thresholds::Beyond, Some(first), Some(last)) =
+            (which, values.first().copied(), values.last().copied())
+        {
+            values.insert(0, first - 1.0);
+            values.push(last + 1.0);
+        }
+        values
+    }
+}
+
+/// Short traces.
+#[derive(Debug, Clone, PartialEq)]
+pub struct ShortTraces {
+    /// The signals, each with its samples.
+    pub columns: Vec<Column>,
+    /// The length of a step in seconds, where durations are not in steps.
+    pub step: Option<f64>,
     count: usize,
-    longest: usize,
-    seed: u64,
-) -> Vec<ShortTrace> {
-    (0..count)
-        .map(|number| {
-            let mut stream = Stream::new(seed, "short traces", number as u64);
-            let length = 1 + stream.below(longest);
-            let hold = stream.below(3);
-            let unknown = [0, 0, 15][stream.below(3)];
-            let signals = signals
-                .iter()
-                .map(|signal| {
-                    let values = if signal.kind() == crate::template::Kind::Flag {
-                        2
-                    } else {
-                        4
-                    };
-                    let mut last = stream.below(values);
-                    let samples = (0..length).map(|_| {
-                        if stream.below(hold + 1) == 0 {
-                            last = stream.below(values);
-                        }
-                        (stream.below(100) >= unknown).then_some(last as f64)
-                    });
-                    (signal.clone(), samples.collect())
+}
+
+impl ShortTraces {
+    /// Random traces: of each signal a mixture of independent, held and rarely
+    /// changing samples. `has_gaps` says which signals have unknown samples.
+    pub fn random(
+        signals: &[Signal],
+        has_gaps: impl Fn(&Signal) -> bool,
+        count: usize,
+        seed: u64,
+    ) -> ShortTraces {
+        let columns = signals.iter().enumerate().map(|(place, signal)| {
+            let values = values_of(signal);
+            let samples = (0..count).map(|number| {
+                let purpose = (number * signals.len() + place) as u64;
+                let mut stream = Stream::new(seed, "short traces", purpose);
+                let hold = [1, 1, 2, 5][stream.below(4)];
+                let unknown = if has_gaps(signal) {
+                    [0, 20, 50][stream.below(3)]
+                } else {
+                    0
+                };
+                let mut last = stream.below(values);
+                std::array::from_fn(|_| {
+                    if stream.below(hold) == 0 {
+                        last = stream.below(values);
+                    }
+                    (stream.below(100) >= unknown).then_some(last as f64)
                 })
-                .collect();
-            ShortTrace { signals, length }
+            });
+            Column {
+                signal: signal.clone(),
+                samples: samples.collect(),
+            }
+        });
+        ShortTraces::of(columns.collect(), None)
+    }
+
+    /// All traces over some signals whose samples change only at the last
+    /// `steps` instants (before them they are held): all records of up to
+    /// `steps` samples are among their ends.
+    pub fn exhaustive(signals: &[Signal], steps: u32) -> ShortTraces {
+        let each: Vec<usize> = signals.iter().map(|s| values_of(s).pow(steps)).collect();
+        let count = each.iter().product();
+        let mut stride = 1;
+        let columns = signals.iter().zip(&each).map(|(signal, own)| {
+            let values = values_of(signal);
+            let samples = (0..count).map(|number| {
+                let code = number / stride % own;
+                std::array::from_fn(|at| {
+                    let place = (at + steps as usize).saturating_sub(LENGTH);
+                    Some((code / values.pow(place as u32) % values) as f64)
+                })
+            });
+            let column = Column {
+                signal: signal.clone(),
+                samples: samples.collect(),
+            };
+            stride *= own;
+            column
+        });
+        ShortTraces::of(columns.collect(), None)
+    }
+
+    /// Traces of given samples.
+    ///
+    /// # Panics
+    /// When the columns have different numbers of traces.
+    pub fn of(columns: Vec<Column>, step: Option<f64>) -> ShortTraces {
+        let count = columns.first().map_or(0, |column| column.samples.len());
+        assert!(columns.iter().all(|column| column.samples.len() == count));
+        ShortTraces {
+            columns,
+            step,
+            count,
+        }
+    }
+
+    /// Number of traces.
+    pub fn len(&self) -> usize {
+        self.count
+    }
+
+    /// Whether there is no trace.
+    pub fn is_empty(&self) -> bool {
+        self.count == 0
+    }
+
+    /// The different members of a formula, or `None` when there are more than
+    /// `most` of them, or of those of a part.
+    pub fn members(
+        &self,
+        formula: &Formula,
+        thresholds: Thresholds,
+        most: usize,
+    ) -> Option<Vec<Verdicts>> {
+        let members = match formula.node() {
+            Node::Atom(atom) => self.atom(atom, thresholds),
+            Node::And(parts) => self.connective(parts, thresholds, most, |a, b| a & b)?,
+            Node::Or(parts) => self.connective(parts, thresholds, most, |a, b| a | b)?,
+            Node::Throughout(window, part) => {
+                let parts = self.members(part, thresholds, most)?;
+                self.each_window(*window)
+                    .flat_map(|window| parts.iter().map(move |part| throughout(window, part)))
+                    .collect()
+            }
+            Node::Sometime(window, part) => {
+                let parts = self.members(part, thresholds, most)?;
+                self.each_window(*window)
+                    .flat_map(|window| parts.iter().map(move |part| sometime(window, part)))
+                    .collect()
+            }
+            Node::Until(window, left, right) => {
+                let lefts = self.members(left, thresholds, most)?;
+                let rights = self.members(right, thresholds, most)?;
+                let windows = self.each_window(*window).count();
+                if lefts.len() * rights.len() * windows > 8 * most {
+                    return None;
+                }
+                let mut members = Vec::new();
+                for window in self.each_window(*window) {
+                    for left in &lefts {
+                        members.extend(rights.iter().map(|right| until(window, left, right)));
+                    }
+                }
+                members
+            }
+        };
+        let members = distinct(members);
+        (members.len() <= most).then_some(members)
+    }
+
+    /// The family: what its members say, in all three places.
+    pub fn family(
+        &self,
+        formula: &Formula,
+        thresholds: Thresholds,
+        most: usize,
+    ) -> Option<BTreeSet<u128>> {
+        let members = self.members(formula, thresholds, most)?;
+        Some(members.iter().map(Verdicts::digest).collect())
+    }
+
+    /// What its members say when they stand outermost.
+    pub fn root_family(
+        &self,
+        formula: &Formula,
+        thresholds: Thresholds,
+        most: usize,
+    ) -> Option<BTreeSet<u128>> {
+        let members = self.members(formula, thresholds, most)?;
+        Some(members.iter().map(|member| digest(&member.root)).collect())
+    }
+
+    fn atom(&self, atom: &Atom, thresholds: Thresholds) -> Vec<Verdicts> {
+        let column = self
+            .columns
+            .iter()
+            .find(|column| column.signal == *atom.signal())
+            .unwrap_or_else(|| panic!("{} is no signal of these traces", atom.signal()));
+        let member = |holds: &dyn Fn(f64) -> bool| {
+            let mut verdicts = Verdicts::sized(self.count);
+            for (trace, samples) in column.samples.iter().enumerate() {
+                for (at, sample) in samples.iter().enumerate() {
+                    let (weak, strong) = match sample {
+                        Some(value) => (holds(*value), holds(*value)),
+                        None => (true, false),
+                    };
+                    verdicts.weak[trace] |= u8::from(weak) << at;
+                    verdicts.strong[trace] |= u8::from(strong) << at;
+                }
+            }
+            verdicts.root.copy_from_slice(&verdicts.weak);
+            verdicts
+        };
+        match atom {
+            Atom::Flag { negated, .. } => vec![member(&|value| (value > 0.5) != *negated)],
+            Atom::Compare {
+                comparison,
+                threshold: Threshold::Number(limit, _),
+                ..
+            } => vec![member(&|value| comparison.holds(value, limit.value()))],
+            Atom::Compare { comparison, .. } => column
+                .thresholds(thresholds)
+                .into_iter()
+                .map(|limit| member(&move |value| comparison.holds(value, limit)))
+                .collect(),
+        }
+    }
+
+    /// The bounds of a window, for all values of its slots.
+    fn each_window(&self, window: Window) -> impl Iterator<Item = Steps> + use<> {
+        let values = |bound: Bound, up: bool| match bound {
+            Bound::End => vec![None],
+            Bound::Slot => (0..=LENGTH).map(Some).collect(),
+            Bound::After(duration) => vec![Some(self.steps(duration, up))],
+        };
+        let upper = values(window.upper(), false);
+        values(window.lower(), true)
+            .into_iter()
+            .flat_map(move |low| upper.clone().into_iter().map(move |high| (low, high)))
+            .map(|(low, high)| (low.unwrap_or(0), high))
+    }
+
+    /// Whole steps of a duration, rounded up or down, at most [`LENGTH`].
+    fn steps(&self, duration: Duration, up: bool) -> usize {
+        let value = duration.value.value();
+        let steps = match (duration.unit.seconds(), self.step) {
+            (Some(seconds), Some(step)) => value * seconds / step,
+            _ => {
+                assert!(duration.unit == TimeUnit::Step || duration.is_zero());
+                value
+            }
+        };
+        // A quotient that is whole but for rounding is that whole number.
+        let near = steps.round();
+        let whole = if (steps - near).abs() < 1e-9 * near.max(1.0) {
+            near
+        } else if up {
+            steps.ceil()
+        } else {
+            steps.floor()
+        };
+        (whole as usize).min(LENGTH)
+    }
+
+    fn connective(
+        &self,
+        parts: &[Formula],
+        thresholds: Thresholds,
+        most: usize,
+        joined: fn(u8, u8) -> u8,
+    ) -> Option<Vec<Verdicts>> {
+        let mut all: Option<Vec<Verdicts>> = None;
+        for part in parts {
+            let own = self.members(part, thresholds, most)?;
+            all = Some(match all {
+                None => own,
+                Some(before) => {
+                    if before.len() * own.len() > 8 * most {
+                        return None;
+                    }
+                    let pairs = before
+                        .iter()
+                        .flat_map(|a| own.iter().map(move |b| a.joined(b, joined)));
+                    distinct(pairs.collect())
+                }
+            });
+        }
+        all
+    }
+}
+
+fn values_of(signal: &Signal) -> usize {
+    match signal.kind() {
+        Kind::Flag => 2,
+        Kind::Numeric => VALUES,
+    }
+}
+
+/// What one member says on all traces: a byte a trace, bit t for instant t.
+#[derive(Debug, Clone, PartialEq, Eq, Hash)]
+pub struct Verdicts {
+    /// In the weak reading.
+    pub weak: Vec<u8>,
+    /// In the strong reading.
+    pub strong: Vec<u8>,
+    /// Outermost, on the record that starts at t.
+    pub root: Vec<u8>,
+}
+
+impl Verdicts {
+    fn sized(count: usize) -> Verdicts {
+        Verdicts {
+            weak: vec![0; count],
+            strong: vec![0; count],
+            root: vec![0; count],
+        }
+    }
+
+    /// Both members by a connective.
+    #[must_use]
+    pub fn joined(&self, other: &Verdicts, joined: fn(u8, u8) -> u8) -> Verdicts {
+        let both = |a: &[u8], b: &[u8]| a.iter().zip(b).map(|(a, b)| joined(*a, *b)).collect();
+        Verdicts {
+            weak: both(&self.weak, &other.weak),
+            strong: both(&self.strong, &other.strong),
+            root: both(&self.root, &other.root),
+        }
+    }
+
+    /// A digest of all three verdicts.
+    pub fn digest(&self) -> u128 {
+        let parts = [&self.weak, &self.strong, &self.root];
+        parts.iter().fold(1, |all, part| {
+            (all ^ digest(part)).wrapping_mul(0x0000_0001_0000_0000_0000_0000_0000_013b)
         })
+    }
+}
+
+impl Verdicts {
+    /// A digest of the outermost verdicts.
+    pub fn root_digest(&self) -> u128 {
+        digest(&self.root)
+    }
+}
+
+/// FNV-1a with 128 bits.
+fn digest(bytes: &[u8]) -> u128 {
+    let offset = 0x6c62_272e_07bb_0142_62b8_2175_6295_c58d;
+    bytes.iter().fold(offset, |digest, byte| {
+        (digest ^ u128::from(*byte)).wrapping_mul(0x0000_0000_0100_0000_0000_0000_0000_013b)
+    })
+}
+
+fn distinct(members: Vec<Verdicts>) -> Vec<Verdicts> {
+    let mut seen = HashSet::new();
+    members
+        .into_iter()
+        .filter(|member| seen.insert(member.digest()))
         .collect()
 }
 
-/// The family of a formula on some traces; `None` when there are more than
-/// `most` combinations of slot values. Thresholds take all values and one below
-/// and above them, times all steps and one beyond.
-pub fn family(formula: &Formula, traces: &[ShortTrace], most: usize) -> Option<BTreeSet<Vec<u8>>> {
-    let longest = traces.iter().map(|trace| trace.length).max().unwrap_or(0);
-    let ranges: Vec<Vec<f64>> = formula
-        .slots()
-        .iter()
-        .map(|slot| match slot.kind {
-            crate::template::SlotKind::Threshold(_) => vec![-1.0, 0.0, 1.0, 2.0, 3.0, 4.0],
-            crate::template::SlotKind::Time => (0..=longest + 1).map(|t| t as f64).collect(),
-        })
-        .collect();
-    let count: usize = ranges.iter().map(Vec::len).product();
-    if count > most {
-        return None;
-    }
-    let mut family = BTreeSet::new();
-    for number in 0..count {
-        let mut rest = number;
-        let values: Vec<f64> = ranges
-            .iter()
-            .map(|range| {
-                let value = range[rest % range.len()];
-                rest /= range.len();
-                value
-            })
-            .collect();
-        family.insert(says(formula, &values, traces));
-    }
-    Some(family)
+/// Bounds of a window with all slots filled: whole steps, cut at the length of
+/// the traces (all instants beyond are alike); no upper bound is `None`.
+type Steps = (usize, Option<usize>);
+
+/// The verdicts k instants later, where `beyond` holds after the record.
+fn later(verdicts: &[u8], k: usize, beyond: bool) -> impl Iterator<Item = u8> {
+    verdicts.iter().map(move |bits| {
+        let kept = if k < LENGTH { 0xff >> k } else { 0_u8 };
+        let moved = if k < LENGTH { bits >> k } else { 0 };
+        if beyond { moved | !kept } else { moved }
+    })
 }
 
-/// What one member says: for each trace and instant a byte with the weak, the
-/// strong and the outermost verdict.
-fn says(formula: &Formula, values: &[f64], traces: &[ShortTrace]) -> Vec<u8> {
-    let mut all = Vec::new();
-    for trace in traces {
-        let judge = Judge { trace, values };
-        for at in 0..trace.length {
-            let verdict = |place| u8::from(judge.holds(formula, at, place, &mut 0));
-            all.push(
-                verdict(Place::Reading(true))
-                    | verdict(Place::Reading(false)) << 1
-                    | verdict(Place::Outermost) << 2,
-            );
-        }
-    }
-    all
-}
-
-/// Where a formula stands: outermost, or in the weak (`true`) or strong
-/// reading.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-enum Place {
-    Outermost,
-    Reading(bool),
-}
-
-struct Judge<'a> {
-    trace: &'a ShortTrace,
-    values: &'a [f64],
-}
-
-impl Judge<'_> {
-    /// The verdict at an instant. `slot` counts the slots passed, in the order
-    /// of the text.
-    fn holds(&self, formula: &Formula, at: usize, place: Place, slot: &mut usize) -> bool {
-        let first = *slot;
-        *slot += formula.slots().len();
-        let weak = place != Place::Reading(false);
-        if at >= self.trace.length {
-            return weak;
-        }
-        let mut next = first;
-        match formula.node() {
-            Node::Atom(atom) => self.atom(atom, at, weak, first),
-            Node::And(parts) => {
-                let verdicts: Vec<bool> = parts
-                    .iter()
-                    .map(|part| self.holds(part, at, place, &mut next))
-                    .collect();
-                verdicts.into_iter().all(|verdict| verdict)
-            }
-            Node::Or(parts) => {
-                let verdicts: Vec<bool> = parts
-                    .iter()
-                    .map(|part| self.holds(part, at, place, &mut next))
-                    .collect();
-                verdicts.into_iter().any(|verdict| verdict)
-            }
-            Node::Throughout(window, part) => {
-                let (low, high) = self.window(*window, &mut next);
-                let below = below(place, *window, true);
-                (at + low..=self.last(at, low, high))
-                    .all(|t| self.holds(part, t, below, &mut next.clone()))
-            }
-            Node::Sometime(window, part) => {
-                let (low, high) = self.window(*window, &mut next);
-                let below = below(place, *window, false);
-                (at + low..=self.last(at, low, high))
-                    .any(|t| self.holds(part, t, below, &mut next.clone()))
-            }
-            Node::Until(window, left, right) => {
-                let left_slot = next;
-                next += left.slots().len();
-                let (low, high) = self.window(*window, &mut next);
-                let (before, then) = (below(place, *window, true), below(place, *window, false));
-                (at + low..=self.last(at, low, high)).any(|t| {
-                    self.holds(right, t, then, &mut next.clone())
-                        && (at..t).all(|u| self.holds(left, u, before, &mut left_slot.clone()))
-                })
+fn throughout(window: Steps, part: &Verdicts) -> Verdicts {
+    let over = |verdicts: &[u8], beyond: bool| {
+        let mut all = vec![0xff; verdicts.len()];
+        for k in window.0..=window.1.unwrap_or(LENGTH) {
+            for (bits, own) in all.iter_mut().zip(later(verdicts, k, beyond)) {
+                *bits &= own;
             }
         }
-    }
-
-    fn atom(&self, atom: &Atom, at: usize, weak: bool, slot: usize) -> bool {
-        let samples = self
-            .trace
-            .signals
-            .iter()
-            .find(|(signal, _)| signal == atom.signal());
-        let Some(sample) = samples.and_then(|(_, samples)| samples[at]) else {
-            return weak;
-        };
-        match atom {
-            Atom::Flag { negated, .. } => (sample > 0.5) != *negated,
-            Atom::Compare {
-                comparison,
-                threshold,
-                ..
-            } => {
-                let limit = match threshold {
-                    Threshold::Slot => self.values[slot],
-                    Threshold::Number(value, _) => value.value(),
-                };
-                comparison.holds(sample, limit)
-            }
-        }
-    }
-
-    fn window(&self, window: Window, next: &mut usize) -> (usize, usize) {
-        let mut steps = |bound: Bound| match bound {
-            Bound::End => usize::MAX,
-            Bound::Slot => {
-                *next += 1;
-                self.values[*next - 1] as usize
-            }
-            Bound::After(duration) => {
-                assert!(duration.unit == TimeUnit::Step || duration.is_zero());
-                duration.value.value() as usize
-            }
-        };
-        (steps(window.lower()), steps(window.upper()))
-    }
-
-    /// All instants beyond the record are alike, so one of them is enough.
-    fn last(&self, at: usize, low: usize, high: usize) -> usize {
-        at.saturating_add(high).min(self.trace.length.max(at + low))
+        all
+    };
+    let weak = over(&part.weak, true);
+    Verdicts {
+        strong: match window.1 {
+            None => weak.clone(),
+            Some(_) => over(&part.strong, false),
+        },
+        root: weak.clone(),
+        weak,
     }
 }
 
-fn below(place: Place, window: Window, weak: bool) -> Place {
-    match place {
-        Place::Reading(reading) if window.upper() != Bound::End => Place::Reading(reading),
-        _ => Place::Reading(weak),
+fn sometime(window: Steps, part: &Verdicts) -> Verdicts {
+    let over = |verdicts: &[u8], beyond: bool| {
+        let mut any = vec![0; verdicts.len()];
+        for k in window.0..=window.1.unwrap_or(LENGTH) {
+            for (bits, own) in any.iter_mut().zip(later(verdicts, k, beyond)) {
+                *bits |= own;
+            }
+        }
+        any
+    };
+    let strong = over(&part.strong, false);
+    Verdicts {
+        weak: match window.1 {
+            None => strong.clone(),
+            Some(_) => over(&part.weak, true),
+        },
+        root: strong.clone(),
+        strong,
+    }
+}
+
+fn until(window: Steps, left: &Verdicts, right: &Verdicts) -> Verdicts {
+    let over = |left: (&[u8], bool), right: (&[u8], bool)| {
+        let mut so_far = vec![0xff; left.0.len()];
+        let mut any = vec![0; left.0.len()];
+        for k in 0..=window.1.unwrap_or(LENGTH) {
+            if k >= window.0 {
+                for ((bits, own), kept) in
+                    any.iter_mut().zip(later(right.0, k, right.1)).zip(&so_far)
+                {
+                    *bits |= own & kept;
+                }
+            }
+            for (bits, own) in so_far.iter_mut().zip(later(left.0, k, left.1)) {
+                *bits &= own;
+            }
+        }
+        any
+    };
+    let root = over((&left.weak, true), (&right.strong, false));
+    match window.1 {
+        None => Verdicts {
+            weak: root.clone(),
+            strong: root.clone(),
+            root,
+        },
+        Some(_) => Verdicts {
+            weak: over((&left.weak, true), (&right.weak, true)),
+            strong: over((&left.strong, false), (&right.strong, false)),
+            root,
+        },
     }
 }

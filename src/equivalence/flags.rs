@@ -2,12 +2,13 @@
 //!
 //! All are facts about the meaning, known to hold or not known; so when two
 //! classes turn out to be one, what is known of either is known of both.
+//! W, S and R are the weak, the strong and the outermost verdict.
 
 use crate::template::{Bound, Window};
 
 /// Facts about a family, as a set of bits.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Default)]
-pub struct Flags(u8);
+pub struct Flags(u16);
 
 impl Flags {
     /// It has one member.
@@ -18,14 +19,25 @@ impl Flags {
     pub const MEET: Flags = Flags(4);
     /// With two members, their disjunction is a member.
     pub const JOIN: Flags = Flags(8);
-    /// Outermost it reads as in the weak reading.
+    /// Outermost it reads as in the weak reading: R = W.
     pub const ROOT_WEAK: Flags = Flags(16);
-    /// Outermost it reads as in the strong reading.
+    /// Outermost it reads as in the strong reading: R = S.
     pub const ROOT_STRONG: Flags = Flags(32);
-    /// At instants of the record both readings agree.
+    /// At instants of the record both readings agree: W = S.
     pub const SAME: Flags = Flags(64);
+    /// On the record, once true it stays true, in W and in S.
+    pub const UP: Flags = Flags(128);
+    /// On the record, once false it stays false, in W and in S.
+    pub const DOWN: Flags = Flags(256);
 
-    const FAMILY: Flags = Flags(1 | 2 | 4 | 8);
+    /// All facts about the number and order of members.
+    pub const FAMILY: Flags = Flags(1 | 2 | 4 | 8);
+    /// All three verdicts agree on the record.
+    pub const STATE: Flags = Flags(16 | 32 | 64);
+    /// A state that is the same at all instants of the record.
+    pub const FIXED: Flags = Flags(16 | 32 | 64 | 128 | 256);
+    /// Everything that can be known.
+    pub const ALL: Flags = Flags(511);
 
     /// Whether all of these are known.
     pub fn has(self, other: Flags) -> bool {
@@ -34,57 +46,53 @@ impl Flags {
 
     /// What is known of either.
     #[must_use]
-    pub fn or(self, other: Flags) -> Flags {
+    pub const fn or(self, other: Flags) -> Flags {
         Flags(self.0 | other.0)
     }
 
     /// What is known of both.
     #[must_use]
-    pub fn both(self, other: Flags) -> Flags {
+    pub const fn both(self, other: Flags) -> Flags {
         Flags(self.0 & other.0)
     }
 
-    fn only(self, wanted: Flags) -> Flags {
-        self.both(wanted)
-    }
-
-    /// An atom at samples that may be unknown: the readings may differ, and
-    /// outermost it is read weak.
-    pub fn atom(has_slot: bool) -> Flags {
+    /// An atom. Of a signal that is known at every sample all verdicts are one;
+    /// else the readings may differ, and outermost it is read weak.
+    pub fn atom(has_slot: bool, is_known: bool) -> Flags {
         let family = if has_slot {
             Flags(2 | 4 | 8)
         } else {
             Flags::FAMILY
         };
-        family.or(Flags::ROOT_WEAK)
+        family.or(if is_known {
+            Flags::STATE
+        } else {
+            Flags::ROOT_WEAK
+        })
     }
 
     /// `and` (or, with `disjunction`, `or`) of families.
     pub fn connective(parts: &[Flags], disjunction: bool) -> Flags {
-        let everything = parts.iter().fold(Flags(127), |all, part| all.both(*part));
-        let mut flags = everything.only(Flags(1 | 16 | 32 | 64));
+        let everything = parts.iter().fold(Flags::ALL, |all, part| all.both(*part));
         let closed = if disjunction {
             Flags::JOIN
         } else {
             Flags::MEET
         };
-        flags = flags.or(everything.only(closed));
-        let many: Vec<&Flags> = parts
-            .iter()
-            .filter(|part| !part.has(Flags::SINGLETON))
-            .collect();
-        match many.as_slice() {
-            [] => flags.or(Flags::FAMILY),
+        let kept = Flags::SINGLETON.or(Flags::FIXED).or(closed);
+        let flags = everything.both(kept);
+        let mut many = parts.iter().filter(|part| !part.has(Flags::SINGLETON));
+        match (many.next(), many.next()) {
+            (None, _) => flags.or(Flags::FAMILY),
             // With one member on all other sides, order and closure stay.
-            [one] => flags.or(one.only(Flags(2 | 4 | 8))),
+            (Some(one), None) => flags.or(one.both(Flags(2 | 4 | 8))),
             _ => flags,
         }
     }
 
     /// `throughout` (or, with `existential`, `sometime`) over a family.
     pub fn window(window: Window, operand: Flags, existential: bool) -> Flags {
-        let has_slot = [window.lower(), window.upper()].contains(&Bound::Slot);
-        let family = match (has_slot, operand.has(Flags::SINGLETON)) {
+        let family = match (has_slot(window), operand.has(Flags::SINGLETON)) {
             (true, true) => Flags(2 | 4 | 8),
             (true, false) => Flags(0),
             (false, true) => Flags::FAMILY,
@@ -94,48 +102,72 @@ impl Flags {
                 } else {
                     Flags::MEET
                 };
-                let mut flags = operand.only(Flags::CHAIN.or(kept));
-                if operand.has(Flags::CHAIN) {
-                    flags = flags.or(Flags(4 | 8));
-                }
-                flags
+                operand
+                    .both(Flags::CHAIN.or(kept))
+                    .or(chain_closure(operand))
             }
         };
-        family.or(Flags::reading(window, existential))
+        family.or(Flags::reading(window, operand, existential))
     }
 
     /// How the end of a record reads a windowed formula. With `end` the kind
     /// sets the reading, so all three are one; a bounded window outermost reads
     /// its operand by kind, as the weak (strong) reading does.
-    fn reading(window: Window, existential: bool) -> Flags {
-        if window.upper() == Bound::End {
-            return Flags(16 | 32 | 64);
-        }
-        if existential {
-            Flags::ROOT_STRONG
+    fn reading(window: Window, operand: Flags, existential: bool) -> Flags {
+        let (root, own, other) = if existential {
+            (Flags::ROOT_STRONG, Flags::DOWN, Flags::UP)
         } else {
-            Flags::ROOT_WEAK
+            (Flags::ROOT_WEAK, Flags::UP, Flags::DOWN)
+        };
+        if window.upper() != Bound::End {
+            return root;
         }
+        // What must hold from now on can only become true; if the operand can
+        // only become false, all hangs on the last instant.
+        let fixed = starts_now(window) && operand.has(other);
+        let moves = if fixed { own.or(other) } else { own };
+        Flags::STATE.or(moves)
     }
 
     /// `until` over families.
     pub fn until(window: Window, left: Flags, right: Flags) -> Flags {
-        let has_slot = [window.lower(), window.upper()].contains(&Bound::Slot);
         let (one, other) = (left.has(Flags::SINGLETON), right.has(Flags::SINGLETON));
-        let family = match (has_slot, one, other) {
+        let family = match (has_slot(window), one, other) {
             (true, true, true) => Flags(2 | 4 | 8),
             (true, _, _) => Flags(0),
             (false, true, true) => Flags::FAMILY,
-            (false, false, true) => left.only(Flags(2 | 4)).or(chain_closure(left)),
-            (false, true, false) => right.only(Flags(2 | 8)).or(chain_closure(right)),
+            (false, false, true) => left
+                .both(Flags::CHAIN.or(Flags::MEET))
+                .or(chain_closure(left)),
+            (false, true, false) => right
+                .both(Flags::CHAIN.or(Flags::JOIN))
+                .or(chain_closure(right)),
             (false, false, false) => Flags(0),
         };
         let reading = match window.upper() {
-            Bound::End => Flags(16 | 32 | 64),
+            // An end that stays can be reached ever more easily.
+            Bound::End if starts_now(window) => Flags::STATE.or(right.both(Flags::UP)),
+            Bound::End => Flags::STATE,
+            // Outermost the left side is read weak, the right one strong.
+            _ if left.has(Flags::SAME) => Flags::ROOT_STRONG,
             _ => Flags(0),
         };
         family.or(reading)
     }
+
+    /// The value of a family at the last instant, which does not depend on
+    /// where it is asked.
+    pub fn last(operand: Flags) -> Flags {
+        operand.both(Flags::FAMILY).or(Flags::FIXED)
+    }
+}
+
+fn has_slot(window: Window) -> bool {
+    [window.lower(), window.upper()].contains(&Bound::Slot)
+}
+
+fn starts_now(window: Window) -> bool {
+    matches!(window.lower(), Bound::After(low) if low.is_zero())
 }
 
 /// Nested members are closed both ways.

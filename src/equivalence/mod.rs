@@ -23,12 +23,13 @@
 
 pub mod brute;
 mod flags;
+mod graph;
 mod language;
 mod normalise;
 mod rules;
 mod seen;
 
 pub use flags::Flags;
-pub use language::{Symbol, WindowKey};
-pub use rules::{RULES, RuleText};
-pub use seen::{Outcome, Seen};
+pub use language::Known;
+pub use rules::{Place, RULES, RuleText};
+pub use seen::{Outcome, RuleStep, Seen};

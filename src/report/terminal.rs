@@ -2,7 +2,7 @@
 
 use std::fmt::Write;
 
-use crate::search::{Explanation, GroupReport, Mode, Ranked, Ranking};
+use crate::search::{Explanation, GroupReport, Mode, Ranked, Ranking, Relation};
 
 /// Names shown of a list before "and n more".
 const NAMES_SHOWN: usize = 8;
@@ -104,6 +104,12 @@ fn entry(ranked: &Ranked, width: usize) -> String {
             ranked.family.len()
         ));
     }
+    relatives.extend(
+        ranked
+            .special_case_of
+            .as_ref()
+            .map(|id| format!("a special case of {id}, with a slot fixed")),
+    );
     if !relatives.is_empty() {
         text.push_str(&wrapped(&relatives.join("; "), margin, margin, width));
     }
@@ -130,6 +136,7 @@ pub fn explanation(explanation: &Explanation, width: usize) -> String {
         text.push('\n');
         text.push_str(&wrapped(&names, "In no group: ", "  ", width));
     }
+    text.push_str(&relatives(explanation, width));
     text.push('\n');
     for line in &explanation.evidence {
         text.push_str(&wrapped(line, "- ", "  ", width));
@@ -148,6 +155,43 @@ pub fn explanation(explanation: &Explanation, width: usize) -> String {
         ),
     };
     text.push_str(&wrapped(&line, "- ", "  ", width));
+    text
+}
+
+/// What stands for nearly the same.
+fn relatives(explanation: &Explanation, width: usize) -> String {
+    let mut text = String::new();
+    if explanation.same_on_data > 0 {
+        let line = format!(
+            "Indistinguishable on this data: {} more.",
+            grouped(explanation.same_on_data)
+        );
+        text.push('\n');
+        text.push_str(&wrapped(&line, "", "  ", width));
+    }
+    if explanation.family.is_empty() {
+        return text;
+    }
+    let line = format!(
+        "Nearly the same groups: {} more.",
+        grouped(explanation.family.len())
+    );
+    text.push('\n');
+    text.push_str(&wrapped(&line, "", "  ", width));
+    for member in explanation.family.iter().take(NAMES_SHOWN) {
+        let relation = match member.relation {
+            Some(Relation::SpecialCase) => "; a special case, with a slot fixed",
+            Some(Relation::MoreGeneral) => "; more general, with one more slot",
+            None => "",
+        };
+        let line = format!("{}  (score {:.3}{relation})", member.text, member.score);
+        text.push_str(&wrapped(
+            &line,
+            &format!("    {}  ", member.id),
+            "             ",
+            width,
+        ));
+    }
     text
 }
 
@@ -233,7 +277,7 @@ fn grouped(count: usize) -> String {
 }
 
 /// A paragraph wrapped to a width, with what its lines start with.
-fn wrapped(text: &str, first: &str, rest: &str, width: usize) -> String {
+pub(super) fn wrapped(text: &str, first: &str, rest: &str, width: usize) -> String {
     let options = textwrap::Options::new(width)
         .initial_indent(first)
         .subsequent_indent(rest);

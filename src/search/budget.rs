@@ -17,6 +17,10 @@ pub struct Limits {
     /// After so much time, when the batch then under way is done. Default:
     /// none.
     pub time: Option<Duration>,
+    /// Bytes that comparing templates may take. From three quarters on they are
+    /// compared by their normal form alone, which takes a third as much; at the
+    /// limit the search stops. Default: 4 GiB.
+    pub memory: usize,
 }
 
 impl Default for Limits {
@@ -25,6 +29,7 @@ impl Default for Limits {
             templates: 2_000,
             size: None,
             time: None,
+            memory: 4 << 30,
         }
     }
 }
@@ -39,6 +44,8 @@ pub enum StopReason {
     Templates,
     /// The limit on time was reached.
     Time,
+    /// The memory for comparing templates is used up.
+    Memory,
     /// The person at the keyboard, or the system, asked for it.
     Interrupted,
 }
@@ -49,6 +56,7 @@ impl fmt::Display for StopReason {
             StopReason::Exhausted => "every template of the grammars was listed",
             StopReason::Templates => "the limit on templates was reached (--templates)",
             StopReason::Time => "the limit on time was reached (--for)",
+            StopReason::Memory => "the memory for comparing templates is used up (--memory)",
             StopReason::Interrupted => "interrupted",
         })
     }
@@ -84,7 +92,10 @@ impl Budget {
     ///
     /// # Errors
     /// The reason to stop.
-    pub fn check(&self, scored: usize) -> Result<(), StopReason> {
+    pub fn check(&self, scored: usize, bytes: usize) -> Result<(), StopReason> {
+        if bytes >= self.limits.memory {
+            return Err(StopReason::Memory);
+        }
         if scored >= self.limits.templates {
             return Err(StopReason::Templates);
         }

@@ -12,7 +12,7 @@ use serde::{Deserialize, Serialize};
 use super::budget::{Budget, StopReason};
 use super::fold::{Folder, Novelty};
 use super::noise::noisy_copy;
-use super::settings::{Settings, palette};
+use super::settings::{Settings, known, palette};
 use crate::embedding::{Embedding, embed, embed_with};
 use crate::equivalence::{Outcome, Seen};
 use crate::grammar::{Canonical, Enumerator, Grammar, Palette, ProductionError};
@@ -138,10 +138,11 @@ pub fn harvest(
         batch: Vec::new(),
         batches: 0,
         place: (String::new(), 0),
+        bytes: 0,
         error: None,
     };
     let palette = palette(driver.traces);
-    let mut seen = Seen::new();
+    let mut seen = Seen::bounded(known(driver.traces), budget.limits().memory / 4 * 3);
     for (scope, grammar) in grammars.iter().enumerate() {
         if driver
             .grammar(grammar, scope as u64, &palette, &mut seen)?
@@ -182,6 +183,8 @@ struct Driver<'a> {
     batch: Vec<Formula>,
     batches: usize,
     place: (String, u32),
+    /// Bytes that the memory of templates takes.
+    bytes: usize,
     error: Option<SearchError>,
 }
 
@@ -226,6 +229,7 @@ impl Driver<'_> {
             self.harvest.counts.distinct += 1;
             self.batch.push(form);
         }
+        self.bytes = seen.bytes();
         if self.batch.len() >= BATCH {
             return self.flush();
         }
@@ -258,7 +262,7 @@ impl Driver<'_> {
         let stop = if self.observer.wants_to_stop() {
             Err(StopReason::Interrupted)
         } else {
-            self.budget.check(self.harvest.counts.scored)
+            self.budget.check(self.harvest.counts.scored, self.bytes)
         };
         match stop {
             Ok(()) => ControlFlow::Continue(()),

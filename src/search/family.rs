@@ -8,7 +8,9 @@
 //! components would be simpler and wrong: likeness is not transitive, and
 //! chains would gather strangers.)
 
-use petgraph::graph::{NodeIndex, UnGraph};
+use petgraph::graph::{DiGraph, NodeIndex, UnGraph};
+
+use crate::template::{Formula, is_special_case};
 
 /// A founder and those it stands for, as positions in the ranking.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -50,6 +52,32 @@ pub fn families(count: usize, alike: impl Fn(usize, usize) -> bool) -> Vec<Famil
         found.push(Family { founder, members });
     }
     found
+}
+
+/// For each template the least general other one of which it is a special
+/// case: its cover in the order of generality.
+pub(super) fn parents(formulas: &[Option<Formula>]) -> Vec<Option<usize>> {
+    let mut graph: DiGraph<usize, ()> = DiGraph::default();
+    let nodes: Vec<NodeIndex> = (0..formulas.len())
+        .map(|place| graph.add_node(place))
+        .collect();
+    for (place, special) in formulas.iter().enumerate() {
+        for (other, general) in formulas.iter().enumerate() {
+            if let (Some(special), Some(general)) = (special, general)
+                && is_special_case(special, general)
+            {
+                graph.add_edge(nodes[place], nodes[other], ());
+            }
+        }
+    }
+    let slots = |place: usize| formulas[place].as_ref().map_or(0, |f| f.slots().len());
+    nodes
+        .iter()
+        .map(|node| {
+            let above = graph.neighbors(*node).map(|other| graph[other]);
+            above.min_by_key(|place| (slots(*place), *place))
+        })
+        .collect()
 }
 
 #[cfg(test)]

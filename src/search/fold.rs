@@ -4,10 +4,9 @@
 //! (the simplest) stands for them; they are different templates all the same,
 //! and are never merged in the e-graph.
 
-use std::cmp::Ordering;
 use std::collections::BTreeMap;
 
-use crate::embedding::Embedding;
+use crate::embedding::{Embedding, column_digests};
 
 /// What an embedding is, compared with those before it.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -30,7 +29,7 @@ impl Folder {
     /// Compares an embedding with those before it; `number` stands for it from
     /// now on when it is new.
     pub fn insert(&mut self, embedding: &Embedding, number: usize) -> Novelty {
-        let key = key(embedding);
+        let key = column_digests(embedding);
         if key.is_empty() {
             return Novelty::Constant;
         }
@@ -42,46 +41,6 @@ impl Folder {
             }
         }
     }
-}
-
-/// The set of scaled columns that are not constant, as sorted digests.
-fn key(embedding: &Embedding) -> Vec<u64> {
-    let mut digests: Vec<u64> = embedding
-        .columns
-        .iter()
-        .filter_map(|column| column_digest(column))
-        .collect();
-    digests.sort_unstable();
-    digests.dedup();
-    digests
-}
-
-/// A digest of a column after scaling its finite heights to 0..1; `None` when
-/// all traces have the same height. FNV-1a over quantised values: two columns
-/// that differ by rounding noise alone agree.
-fn column_digest(column: &[f64]) -> Option<u64> {
-    let same = |pair: &[f64]| pair[0].partial_cmp(&pair[1]) == Some(Ordering::Equal);
-    if column.windows(2).all(same) {
-        return None;
-    }
-    let finite = column.iter().copied().filter(|height| height.is_finite());
-    let low = finite.clone().fold(f64::INFINITY, f64::min);
-    let high = finite.fold(f64::NEG_INFINITY, f64::max);
-    let scale = if high > low { 1.0 / (high - low) } else { 0.0 };
-    let mut digest = 0xcbf2_9ce4_8422_2325_u64;
-    for height in column {
-        let value = if height.is_finite() {
-            ((height - low) * scale * 1e9).round() as i64
-        } else if *height > 0.0 {
-            i64::MAX
-        } else {
-            i64::MIN
-        };
-        for byte in value.to_le_bytes() {
-            digest = (digest ^ u64::from(byte)).wrapping_mul(0x0100_0000_01b3);
-        }
-    }
-    Some(digest)
 }
 
 #[cfg(test)]

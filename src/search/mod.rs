@@ -28,6 +28,6 @@ pub use noise::noisy_copy;
 pub use outcome::{
     CheckReport, DataFacts, DescriptionReport, EXPLANATION_SCHEMA, Explanation, FamilyMember,
     GroupReport, HeldOut, HeldOutDescription, Intervals, LiteralReport, Mode, RANKING_SCHEMA,
-    Ranked, RankedBrief, Ranking, RepresentativeReport, RunFacts,
+    Ranked, RankedBrief, Ranking, Relation, RepresentativeReport, RunFacts,
 };
 pub use settings::{Settings, palette};

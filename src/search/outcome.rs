@@ -136,6 +136,10 @@ pub struct Ranked {
     pub same_on_data: usize,
     /// Other templates that group the traces nearly alike.
     pub family: Vec<FamilyMember>,
+    /// The id of a ranked template of which this is a special case, with a slot
+    /// fixed.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub special_case_of: Option<String>,
 }
 
 /// A template that says nearly the same as a ranked one.
@@ -147,6 +151,20 @@ pub struct FamilyMember {
     pub text: String,
     /// What it would be ranked by.
     pub score: f64,
+    /// How it is related to the ranked one, where one is the other with a slot
+    /// fixed.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub relation: Option<Relation>,
+}
+
+/// One template is another with a slot fixed.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Relation {
+    /// It is the ranked template with a slot fixed.
+    SpecialCase,
+    /// The ranked template is this one with a slot fixed.
+    MoreGeneral,
 }
 
 /// One ranked template, explained.
@@ -165,6 +183,12 @@ pub struct Explanation {
     pub none: Vec<String>,
     /// What was tested, against what, with what result.
     pub evidence: Vec<String>,
+    /// How many templates are indistinguishable from it on this data.
+    #[serde(default)]
+    pub same_on_data: usize,
+    /// Other templates that group the traces nearly alike, best first.
+    #[serde(default)]
+    pub family: Vec<FamilyMember>,
     /// The result of re-checking every description by the naive evaluator.
     pub check: CheckReport,
 }

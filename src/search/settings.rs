@@ -2,6 +2,7 @@
 
 use serde::{Deserialize, Serialize};
 
+use crate::equivalence::Known;
 use crate::grammar::{Grammar, GrammarError, Palette, SHIPPED};
 use crate::support::Finite;
 use crate::template::{Duration, Kind};
@@ -75,4 +76,20 @@ pub fn palette(traces: &TraceSet) -> Palette {
         }
     }
     palette
+}
+
+/// Which signals of a trace set are known at every sample.
+pub(super) fn known(traces: &TraceSet) -> Known {
+    let with_gaps = traces.recorded().iter().flat_map(|channel| {
+        let mut names = Vec::new();
+        if channel.samples.iter().any(|sample| sample.is_nan()) {
+            channel
+                .signal
+                .for_each_recorded(&mut |name, _| names.push(name.clone()));
+        }
+        names
+    });
+    Known {
+        with_gaps: with_gaps.collect(),
+    }
 }

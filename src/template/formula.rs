@@ -200,6 +200,12 @@ impl Formula {
         &self.0.node
     }
 
+    /// The address of the tree: the same for clones of one formula as long as
+    /// one of them lives, so a quick key for tables that keep the formula too.
+    pub fn address(&self) -> usize {
+        Arc::as_ptr(&self.0) as usize
+    }
+
     /// Size: 1 for each channel, flag, function, connective and temporal
     /// operator; `not` on a flag is free.
     pub fn size(&self) -> u32 {

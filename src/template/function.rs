@@ -53,6 +53,8 @@ pub struct FunctionShape {
     pub result: Kind,
     /// Whether a monitor can compute it from the past alone.
     pub live: bool,
+    /// Whether it is known wherever its arguments are.
+    pub total: bool,
     /// The definition in one line, for help and error messages.
     pub definition: &'static str,
 }
@@ -76,7 +78,8 @@ pub const FUNCTIONS: &[FunctionShape] = &[
         Kind::Numeric,
         true,
         "magnitude of x(t)",
-    ),
+    )
+    .known_throughout(),
     row(
         Function::Difference,
         "-",
@@ -85,7 +88,8 @@ pub const FUNCTIONS: &[FunctionShape] = &[
         Kind::Numeric,
         true,
         "x(t) - y(t)",
-    ),
+    )
+    .known_throughout(),
     row(
         Function::Smooth,
         "smooth",
@@ -103,7 +107,8 @@ pub const FUNCTIONS: &[FunctionShape] = &[
         Kind::Numeric,
         true,
         "x(t) minus the median of the trace's first samples",
-    ),
+    )
+    .known_throughout(),
     row(
         Function::ToFinal,
         "to_final",
@@ -112,7 +117,8 @@ pub const FUNCTIONS: &[FunctionShape] = &[
         Kind::Numeric,
         false,
         "x(t) minus the median of the trace's last samples",
-    ),
+    )
+    .known_throughout(),
     row(
         Function::Spread,
         "spread",
@@ -158,7 +164,16 @@ const fn row(
         takes_duration,
         result,
         live,
+        total: false,
         definition,
+    }
+}
+
+impl FunctionShape {
+    /// Says that it is known wherever its arguments are.
+    const fn known_throughout(mut self) -> Self {
+        self.total = true;
+        self
     }
 }
 

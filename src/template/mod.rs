@@ -30,6 +30,7 @@ mod print;
 mod sentence;
 mod signal;
 mod slot;
+mod special;
 mod token;
 mod window;
 
@@ -47,5 +48,6 @@ pub use parse::{Parser, parse_ast};
 pub use sentence::{Words, sentence};
 pub use signal::{Derivation, Signal};
 pub use slot::{Direction, Slot, SlotKind, SlotValue};
+pub use special::is_special_case;
 pub use token::{RESERVED, Token, TokenKind, is_plain_name, tokenize};
 pub use window::{Bound, Window, WindowError};

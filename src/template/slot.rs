@@ -42,7 +42,7 @@ pub struct Slot {
 }
 
 /// A value for a slot.
-#[derive(Debug, Clone, PartialEq, Eq)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum SlotValue {
     /// For a threshold slot.
     Threshold(Finite),

@@ -105,9 +105,13 @@ fn labelled_founders(
         (Some(a), Some(b)) => a.likeness(b) >= ALIKE,
         _ => false,
     };
-    let member = |rank: &usize| {
+    let member = |rank: &usize, founder: usize| {
         let kept = &harvest.kept[first[*rank].0];
-        family_member(kept, kept.score.map_or(0.0, |score| score.score))
+        family_member(
+            kept,
+            &harvest.kept[founder],
+            kept.score.map_or(0.0, |score| score.score),
+        )
     };
     let mut founders: Vec<Founder> = families(first.len(), alike)
         .into_iter()
@@ -128,7 +132,7 @@ fn labelled_founders(
                 silhouette: score.map_or(0.0, |score| score.silhouette),
                 support: None,
                 trial: None,
-                family: members.iter().map(member).collect(),
+                family: members.iter().map(|rank| member(rank, *kept)).collect(),
             }
         })
         .collect();

@@ -5,13 +5,16 @@ mod unlabelled;
 
 use super::describe::{Described, Units, height_text};
 use super::driver::{Harvest, Kept};
-use super::outcome::{EXPLANATION_SCHEMA, Explanation, FamilyMember, HeldOut, Ranked, RankedBrief};
+use super::family::parents;
+use super::outcome::{
+    EXPLANATION_SCHEMA, Explanation, FamilyMember, HeldOut, Ranked, RankedBrief, Relation,
+};
 use super::settings::Settings;
 use crate::embedding::Embedding;
 use crate::grouping::{Partition, adjusted_rand};
 use crate::scoring::Verdict;
 use crate::support::short_id;
-use crate::template::sentence;
+use crate::template::{Formula, is_special_case, sentence};
 use crate::traces::TraceSet;
 
 /// Families shown.
@@ -70,18 +73,44 @@ pub fn finish(
     held_out: Option<&TraceSet>,
     settings: &Settings,
 ) -> Finished {
-    match traces.labels().filter(|_| settings.use_labels) {
+    let mut finished = match traces.labels().filter(|_| settings.use_labels) {
         Some(labels) => labelled::labelled(harvest, traces, held_out, labels, settings),
         None => unlabelled::unlabelled(harvest, traces, settings),
+    };
+    relate(&mut finished.ranked, harvest);
+    finished
+}
+
+/// Says of each ranked template of which other one it is a special case: the
+/// least general one, so that a chain reads step by step.
+fn relate(ranked: &mut [Ranked], harvest: &Harvest) {
+    let formula = |entry: &Ranked| {
+        let kept = harvest.kept.iter();
+        let mut fitting = kept.filter(|kept| short_id(&kept.formula.to_string()) == entry.id);
+        fitting.next().map(|kept| kept.formula.clone())
+    };
+    let formulas: Vec<Option<Formula>> = ranked.iter().map(formula).collect();
+    let parents = parents(&formulas);
+    for (place, parent) in parents.into_iter().enumerate() {
+        ranked[place].special_case_of = parent.map(|parent| ranked[parent].id.clone());
     }
 }
 
-fn family_member(kept: &Kept, score: f64) -> FamilyMember {
+/// A member of the family of a founder.
+fn family_member(kept: &Kept, founder: &Kept, score: f64) -> FamilyMember {
     let text = kept.formula.to_string();
+    let relation = if is_special_case(&kept.formula, &founder.formula) {
+        Some(Relation::SpecialCase)
+    } else if is_special_case(&founder.formula, &kept.formula) {
+        Some(Relation::MoreGeneral)
+    } else {
+        None
+    };
     FamilyMember {
         id: short_id(&text),
         text,
         score,
+        relation,
     }
 }
 
@@ -114,6 +143,7 @@ fn ranked(
         agreement_with_labels: agreement,
         same_on_data: kept.same_on_data,
         family: founder.family.clone(),
+        special_case_of: None,
     }
 }
 
@@ -143,6 +173,8 @@ fn explanation(
         groups: described.groups.clone(),
         none: odd.map(|(_, name)| name.clone()).collect(),
         evidence,
+        same_on_data: entry.same_on_data,
+        family: entry.family.clone(),
         check: described.check,
     }
 }

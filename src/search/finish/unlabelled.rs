@@ -92,8 +92,8 @@ fn unlabelled_founders(
             .position(|(at, _)| like(&first[*at], grouping) >= SAME_GROUPS);
         if let Some(known) = known {
             let kept = &harvest.kept[grouping.candidate.template];
-            let member = family_member(kept, grouping.score);
             let founder = &mut founders[known].1;
+            let member = family_member(kept, &harvest.kept[founder.kept], grouping.score);
             let own = founder.kept == grouping.candidate.template;
             if !own && founder.family.iter().all(|other| other.id != member.id) {
                 founder.family.push(member);
