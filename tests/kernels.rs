@@ -2,7 +2,7 @@
 //! random formulas and traces with unknown samples and unequal lengths.
 
 use strandline::embedding::resolve;
-use strandline::kernels::naive;
+use strandline::kernels::{Level, Plan, Resolved, Role, Worker, naive};
 use strandline::support::{Finite, Stream, TraceId};
 use strandline::template::{
     Bound, Direction, Duration, Formula, Node, Signal, SlotKind, SlotValue, TimeUnit,
@@ -155,4 +155,100 @@ fn has_outermost_atom(formula: &Formula) -> bool {
         Node::And(parts) | Node::Or(parts) => parts.iter().any(has_outermost_atom),
         _ => false,
     }
+}
+
+/// Templates for a batch, with roles for their slots: the first is solved, the
+/// others lie on grids.
+fn batch(stream: &mut Stream, traces: &mut TraceSet) -> Vec<(Resolved, Vec<Role>)> {
+    let shapes = Shapes::all();
+    let mut batch = Vec::new();
+    while batch.len() < 40 {
+        let formula = random_formula(stream, &shapes, 4);
+        let slots = formula.slots();
+        if slots.is_empty() || slots.len() > 3 || !has_small_bounds(&formula) {
+            continue;
+        }
+        let Ok(resolved) = resolve(&formula, traces) else {
+            continue;
+        };
+        let height = stream.below(slots.len());
+        let role = |(at, slot): (usize, &strandline::template::Slot)| match &slot.kind {
+            _ if at == height => Role::Height,
+            SlotKind::Threshold(_) => Role::Levels(vec![0.5, 1.0, 2.5, 3.0]),
+            SlotKind::Time => Role::Steps([3, 4, 7, 12, 90].into_iter().collect()),
+        };
+        let roles = slots.iter().enumerate().map(role).collect();
+        batch.push((resolved, roles));
+    }
+    batch
+}
+
+fn long_traces(stream: &mut Stream) -> TraceSet {
+    let lengths: Vec<usize> = (0..4).map(|_| 1 + stream.below(150)).collect();
+    let total: usize = lengths.iter().sum();
+    let mut samples = |values: usize| -> Vec<f64> {
+        let mut sample = || match stream.below(12) {
+            0 => f64::NAN,
+            _ => stream.below(values) as f64,
+        };
+        (0..total).map(|_| sample()).collect()
+    };
+    let signals = [
+        (Signal::channel("x"), 5),
+        (Signal::channel("flow rate"), 30),
+        (Signal::flag("e"), 2),
+        (Signal::flag("end"), 2),
+    ];
+    let channels = signals.map(|(signal, values)| Channel {
+        signal,
+        unit: Some("mm/s".into()),
+        samples: samples(values),
+    });
+    let names = (0..4).map(|n| format!("t{n}")).collect();
+    let grid = Grid {
+        step: 0.5,
+        unit: TimeUnit::Second,
+    };
+    TraceSet::new(names, &lengths, None, grid, channels.into())
+}
+
+/// A batch gives what its templates give one by one, in both codes and at all
+/// levels that the machine has.
+#[test]
+fn batches_codes_and_levels_agree() {
+    let mut compared = 0;
+    for case in 0..25 {
+        let mut stream = Stream::new(23, "batches", case);
+        let mut traces = long_traces(&mut stream);
+        let batch = batch(&mut stream, &mut traces);
+        let plan_of = |members: &[(Resolved, Vec<Role>)]| {
+            let mut plan = Plan::new();
+            for (resolved, roles) in members {
+                plan.add(resolved, roles, &traces);
+            }
+            plan
+        };
+        let whole = plan_of(&batch);
+        for trace in traces.traces() {
+            let record = traces.record(trace);
+            let mut one_by_one = Vec::new();
+            for member in &batch {
+                let plan = plan_of(std::slice::from_ref(member));
+                one_by_one.extend(Worker::<u32>::at(&plan, Level::Portable).demands(record));
+            }
+            for level in Level::ALL.into_iter().filter(|level| level.is_here()) {
+                let narrow = Worker::<u16>::at(&whole, level).demands(record);
+                assert_eq!(narrow, one_by_one, "{}", level.name());
+                let wide = Worker::<u32>::at(&whole, level).demands(record);
+                assert_eq!(wide, one_by_one, "{}", level.name());
+                compared += narrow.len();
+            }
+        }
+        let alone: usize = batch
+            .iter()
+            .map(|member| plan_of(std::slice::from_ref(member)).passes())
+            .sum();
+        assert!(whole.passes() < alone, "{} {alone}", whole.passes());
+    }
+    assert!(compared > 10_000, "{compared}");
 }

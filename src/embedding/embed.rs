@@ -5,12 +5,10 @@ use rayon::prelude::*;
 use super::grid::{threshold_points, time_points};
 use super::resolve::{ResolveError, resolve_derived};
 use super::table::{Axis, Embedding};
-use crate::kernels::{
-    Evaluation, Fill, Limit, NEVER, Plan, PlanAxis, Resolved, Shape, Span, Step, naive,
-};
+use crate::kernels::{Code, Limit, NEVER, Plan, Resolved, Role, Shape, Span, Step, Worker, naive};
 use crate::support::{SignalId, SlotId, TraceId};
 use crate::template::{Direction, Formula, SlotKind};
-use crate::traces::TraceSet;
+use crate::traces::{MOST_NARROW, TraceSet};
 
 /// Points of an axis when nothing else is said.
 pub const DEFAULT_POINTS: usize = 16;
@@ -84,13 +82,22 @@ pub fn axes(
 /// # Errors
 /// When the template has no slot or does not fit the data.
 pub fn embed(formula: &Formula, traces: &TraceSet) -> Result<Embedding, EmbedError> {
+    let (formula, height, axes) = request(formula, traces)?;
+    embed_with(&formula, traces, height, axes)
+}
+
+/// A template with default height and axes, to be embedded with others.
+///
+/// # Errors
+/// When the template has no slot or does not fit the data.
+pub fn request(formula: &Formula, traces: &TraceSet) -> Result<Request, EmbedError> {
     let height = default_height(formula).ok_or_else(|| EmbedError::NoSlot(formula.clone()))?;
     let points = match formula.slots().len() {
         0..=2 => DEFAULT_POINTS,
         _ => POINTS_OF_SEVERAL,
     };
     let axes = axes(formula, traces, height, points)?;
-    embed_with(formula, traces, height, axes)
+    Ok((formula.clone(), height, axes))
 }
 
 /// The embedding of a template with a given height and axes.
@@ -103,38 +110,128 @@ pub fn embed_with(
     height: SlotId,
     axes: Vec<Axis>,
 ) -> Result<Embedding, EmbedError> {
-    let resolved = resolve_derived(formula, traces)?;
-    let mut embedding = Embedding {
-        formula: formula.clone(),
-        height,
-        axes,
-        columns: Vec::new(),
-    };
-    let plan_axes = embedding
-        .axes
-        .iter()
-        .map(|axis| plan_axis(formula, axis))
-        .collect();
-    let plan = Plan::new(&resolved, formula.slots().len(), plan_axes);
-    let values: &[f64] = match signal_of(&resolved, height) {
-        Some(signal) => traces.distinct_values(signal),
-        None => &[],
-    };
-    let cells: usize = embedding
-        .axes
-        .iter()
-        .map(|axis| axis.points.len())
-        .product();
-    embedding.columns = vec![Vec::with_capacity(traces.count()); cells];
-    for trace in traces.traces() {
-        let mut evaluation = Evaluation::new(&plan, traces.record(trace), values);
-        let demands = evaluation.demands_of_grid();
-        for (cell, demand) in demands.into_iter().enumerate() {
-            let height = height_of(&embedding, demand, values, traces.length(trace));
-            embedding.columns[cell].push(height);
+    let mut embeddings = embed_batch(vec![(formula.clone(), height, axes)], traces);
+    embeddings.pop().expect("one template, one embedding")
+}
+
+/// A template, the slot that is solved, and the grids of the others.
+pub type Request = (Formula, SlotId, Vec<Axis>);
+
+/// The embeddings of many templates at once: what they share is computed once,
+/// and the traces are spread over the cores. One result a request, in order.
+///
+/// # Errors
+/// For each template that does not fit the data.
+pub fn embed_batch(
+    requests: Vec<Request>,
+    traces: &TraceSet,
+) -> Vec<Result<Embedding, EmbedError>> {
+    let mut narrow = Batch::default();
+    let mut wide = Batch::default();
+    let mut results: Vec<Option<Result<Embedding, EmbedError>>> = Vec::new();
+    for (place, (formula, height, axes)) in requests.into_iter().enumerate() {
+        results.push(None);
+        let embedding = Embedding {
+            formula,
+            height,
+            axes,
+            columns: Vec::new(),
+        };
+        match resolve_derived(&embedding.formula, traces) {
+            Err(error) => results[place] = Some(Err(error.into())),
+            Ok(resolved) => {
+                let signal = signal_of(&resolved, height);
+                let codes = match signal {
+                    Some(signal) => traces.distinct_values(signal).len(),
+                    None => traces.longest() + 1,
+                };
+                let batch = if codes <= MOST_NARROW {
+                    &mut narrow
+                } else {
+                    &mut wide
+                };
+                batch.add(place, embedding, &resolved, signal, traces);
+            }
         }
     }
-    Ok(embedding)
+    for (place, embedding) in narrow
+        .evaluate::<u16>(traces)
+        .into_iter()
+        .chain(wide.evaluate::<u32>(traces))
+    {
+        results[place] = Some(Ok(embedding));
+    }
+    results
+        .into_iter()
+        .map(|result| result.expect("every request was answered"))
+        .collect()
+}
+
+/// Templates whose demands fit one code.
+#[derive(Debug, Default)]
+struct Batch {
+    plan: Plan,
+    /// The place of each among the requests, and the signal that its height
+    /// limits.
+    members: Vec<(usize, Embedding, Option<SignalId>)>,
+}
+
+impl Batch {
+    fn add(
+        &mut self,
+        place: usize,
+        embedding: Embedding,
+        resolved: &Resolved,
+        signal: Option<SignalId>,
+        traces: &TraceSet,
+    ) {
+        let mut roles = vec![Role::Height; embedding.formula.slots().len()];
+        for axis in &embedding.axes {
+            roles[axis.slot.index()] = match embedding.formula.slot(axis.slot).kind {
+                SlotKind::Threshold(_) => Role::Levels(axis.points.clone()),
+                SlotKind::Time => {
+                    Role::Steps(axis.points.iter().map(|point| *point as u32).collect())
+                }
+            };
+        }
+        self.plan.add(resolved, &roles, traces);
+        self.members.push((place, embedding, signal));
+    }
+
+    /// The embeddings, each with its place among the requests.
+    fn evaluate<T: Code>(self, traces: &TraceSet) -> Vec<(usize, Embedding)> {
+        if self.plan.is_empty() {
+            return Vec::new();
+        }
+        let ids: Vec<TraceId> = traces.traces().collect();
+        let plan = &self.plan;
+        let demands: Vec<Vec<u32>> = ids
+            .par_iter()
+            .map_init(
+                || Worker::<T>::new(plan),
+                |worker, trace| worker.demands(traces.record(*trace)),
+            )
+            .collect();
+        let mut first = 0;
+        let mut embeddings = Vec::with_capacity(self.members.len());
+        for (place, mut embedding, signal) in self.members {
+            let values = signal.map_or(&[][..], |signal| traces.distinct_values(signal));
+            let axes = embedding.axes.iter();
+            let cells: usize = axes.map(|axis| axis.points.len()).product();
+            embedding.columns = (first..first + cells)
+                .map(|cell| {
+                    let rows = demands.iter().zip(&ids);
+                    rows.map(|(row, trace)| {
+                        height_of(&embedding, row[cell], values, traces.length(*trace))
+                    })
+                    .collect()
+                })
+                .collect();
+            first += cells;
+            embeddings.push((place, embedding));
+        }
+        embeddings
+    }
 }
 
 /// The verdict of a specification on every trace.
@@ -148,18 +245,6 @@ pub fn verdicts(formula: &Formula, traces: &TraceSet) -> Result<Vec<bool>, Resol
         .par_iter()
         .map(|trace| naive::satisfied(&resolved, traces.record(*trace)))
         .collect())
-}
-
-/// An axis as the kernels know it.
-fn plan_axis(formula: &Formula, axis: &Axis) -> PlanAxis {
-    let fill = |point: &f64| match formula.slot(axis.slot).kind {
-        SlotKind::Threshold(_) => Fill::Threshold(*point),
-        SlotKind::Time => Fill::Steps(*point as u32),
-    };
-    PlanAxis {
-        slot: axis.slot,
-        fills: axis.points.iter().map(fill).collect(),
-    }
 }
 
 /// The signal that a threshold slot limits.

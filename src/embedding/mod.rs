@@ -13,7 +13,10 @@ mod measure;
 mod resolve;
 mod table;
 
-pub use embed::{DEFAULT_POINTS, EmbedError, axes, default_height, embed, embed_with, verdicts};
+pub use embed::{
+    DEFAULT_POINTS, EmbedError, Request, axes, default_height, embed, embed_batch, embed_with,
+    request, verdicts,
+};
 pub use grid::{threshold_points, time_points};
 pub use likeness::{column_digests, mean_scaled_heights};
 pub use measure::{MeasureOptions, MeasureRow, MeasureTable, measure};

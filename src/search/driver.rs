@@ -13,7 +13,7 @@ use super::budget::{Budget, StopReason};
 use super::fold::{Folder, Novelty};
 use super::noise::noisy_copy;
 use super::settings::{Settings, known, palette};
-use crate::embedding::{Embedding, embed, embed_with};
+use crate::embedding::{Embedding, embed_batch, request};
 use crate::equivalence::{Outcome, Seen};
 use crate::grammar::{Canonical, Enumerator, Grammar, Palette, ProductionError};
 use crate::scoring::{Consensus, LabelledScore, score};
@@ -286,10 +286,11 @@ impl Driver<'_> {
             })
             .collect();
         let traces: &TraceSet = self.traces;
-        let embeddings: Vec<Option<Embedding>> = fitting
-            .par_iter()
-            .map(|formula| embed(formula, traces).ok())
+        let requests = fitting
+            .iter()
+            .filter_map(|formula| request(formula, traces).ok())
             .collect();
+        let embeddings = embed_batch(requests, traces);
         let mut new = Vec::new();
         for embedding in embeddings.into_iter().flatten() {
             match self.folder.insert(&embedding, self.harvest.kept.len()) {
@@ -357,9 +358,11 @@ fn noisy_embeddings(noisy: &mut TraceSet, embeddings: &[Embedding]) -> Vec<Optio
         let _ = noisy.derive(&signal);
     }
     let noisy: &TraceSet = noisy;
-    embeddings
-        .par_iter()
-        .map(|clean| embed_with(&clean.formula, noisy, clean.height, clean.axes.clone()).ok())
+    let request = |clean: &Embedding| (clean.formula.clone(), clean.height, clean.axes.clone());
+    let requests = embeddings.iter().map(request).collect();
+    embed_batch(requests, noisy)
+        .into_iter()
+        .map(Result::ok)
         .collect()
 }
 

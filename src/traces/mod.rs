@@ -29,4 +29,4 @@ pub use error::{Place, TraceError};
 pub use finding::Finding;
 pub use layout::Layout;
 pub use load::{LoadOptions, Loaded, check_labels, load};
-pub use set::{Channel, Grid, Labels, Record, TraceSet};
+pub use set::{Channel, Grid, Labels, MOST_NARROW, Ranks, Record, TraceSet};

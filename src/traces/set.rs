@@ -89,7 +89,29 @@ pub struct TraceSet {
     /// For each signal its different values in ascending order, likewise.
     distinct: Vec<OnceLock<Vec<f64>>>,
     /// For each signal the rank of each sample among its different values.
-    ranks: Vec<OnceLock<Vec<u32>>>,
+    ranks: Vec<OnceLock<RankTable>>,
+}
+
+/// Ranks of samples among the different values of their signal, from 0; the
+/// largest number of the code stands where a sample is not known. 16-bit codes
+/// where there are at most [`MOST_NARROW`] different values.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Ranks<'a> {
+    /// 16-bit codes.
+    Narrow(&'a [u16]),
+    /// 32-bit codes.
+    Wide(&'a [u32]),
+}
+
+/// Different values up to which 16-bit codes are used: two are taken, for the
+/// demand that no value meets, and for counting from 1.
+pub const MOST_NARROW: usize = u16::MAX as usize - 1;
+
+/// The ranks of all samples of one signal.
+#[derive(Debug, Clone)]
+enum RankTable {
+    Narrow(Vec<u16>),
+    Wide(Vec<u32>),
 }
 
 /// One trace's samples, by signal.
@@ -111,7 +133,7 @@ impl<'a> Record<'a> {
     }
 
     /// The ranks of a signal's samples, as in [`TraceSet::ranks`].
-    pub fn ranks(&self, signal: SignalId) -> &'a [u32] {
+    pub fn ranks(&self, signal: SignalId) -> Ranks<'a> {
         self.set.ranks(signal, self.trace)
     }
 }
@@ -259,18 +281,31 @@ impl TraceSet {
     }
 
     /// The rank of every sample of a signal on one trace among the signal's
-    /// different values, from 0; meaningless where a sample is not known.
-    pub fn ranks(&self, signal: SignalId, trace: TraceId) -> &[u32] {
-        let ranks = self.ranks[signal.index()].get_or_init(|| {
-            let values = self.distinct_values(signal);
-            let rank = |sample: &f64| values.partition_point(|value| value < sample) as u32;
-            self.channels[signal.index()]
-                .samples
-                .iter()
-                .map(rank)
-                .collect()
+    /// different values.
+    pub fn ranks(&self, signal: SignalId, trace: TraceId) -> Ranks<'_> {
+        let range = self.starts[trace.index()]..self.starts[trace.index() + 1];
+        match self.ranks[signal.index()].get_or_init(|| self.rank_table(signal)) {
+            RankTable::Narrow(ranks) => Ranks::Narrow(&ranks[range]),
+            RankTable::Wide(ranks) => Ranks::Wide(&ranks[range]),
+        }
+    }
+
+    fn rank_table(&self, signal: SignalId) -> RankTable {
+        let values = self.distinct_values(signal);
+        let samples = &self.channels[signal.index()].samples;
+        let rank = |sample: &f64| values.partition_point(|value| value < sample);
+        if values.len() <= MOST_NARROW {
+            let ranks = samples.iter().map(|sample| match sample.is_nan() {
+                true => u16::MAX,
+                false => rank(sample) as u16,
+            });
+            return RankTable::Narrow(ranks.collect());
+        }
+        let ranks = samples.iter().map(|sample| match sample.is_nan() {
+            true => u32::MAX,
+            false => rank(sample) as u32,
         });
-        &ranks[self.starts[trace.index()]..self.starts[trace.index() + 1]]
+        RankTable::Wide(ranks.collect())
     }
 
     /// One trace's samples by signal.
